@@ -1,0 +1,41 @@
+package limits
+
+import "wavetally/harmonics/site"
+
+// Results of a finding.
+const (
+	Within      = "within"
+	Exceeds     = "exceeds"
+	Undecided   = "undecided"
+	NotAssessed = "not assessed"
+)
+
+// A Finding is one limit applied to one value of one channel. Percentages are of Basis.
+type Finding struct {
+	RuleSet    string    // name, such as "ieee-519-2022"
+	Clause     string    // clause and table in the document
+	Channel    site.Role // the phase the value was measured on; phases are never pooled
+	Quantity   string    // "harmonic", "thd", "tdd"
+	Order      int       // 0 for totals
+	Statistic  string    // such as "95th percentile of 10 min values over a week"
+	Value      float64   // in Unit; NaN when there is none
+	ValueLow   float64   // confidence bounds of the percentile joined with the declared measurement uncertainty, in Unit; NaN when unknown
+	ValueHigh  float64
+	Level      float64 // the same value in the channel's unit (V or A); NaN when there is none
+	Limit      float64 // in Unit; NaN when the rule set could not be applied
+	Unit       string  // "%"
+	Share      float64 // 100 × Value / Limit, per cent
+	Result     string
+	Why        string // for undecided and not assessed: the reason and what would settle it
+	Basis      string // what the percentage is of: "nominal voltage 230.9 V", "demand current 410 A", "fundamental"
+	N          int    // intervals behind Value
+	Indicative bool   // Value is not the statistic the rule asks for, but the nearest the record gives
+	Unverified bool   // the limit's table is from memory, not corroborated
+
+	// What a live spreadsheet formula needs to redo the verdict.
+	LimitRow  string  // the row of the table the limit came from, such as "50 to <100"
+	TableKey  string  // names the table, column and factor in the rule set: RuleSet/Table/Row/Column
+	TablePct  float64 // the table's entry before even-order and statistic factors
+	Factor    float64 // product of the factors: Limit = TablePct × Factor
+	BasisSize float64 // the number behind Basis in the channel's unit; NaN for the fundamental
+}
