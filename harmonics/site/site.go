@@ -146,3 +146,29 @@ func (s Supply) NominalOf(r Role) float64 {
 	}
 	return s.NominalVoltage
 }
+
+// File overrules what a loader guesses about a table of text. Every field may be absent.
+type File struct {
+	Delimiter    string  `toml:"delimiter" json:"delimiter,omitempty"`         // one character, or "tab"
+	Decimal      string  `toml:"decimal" json:"decimal,omitempty"`             // "." or ","
+	Encoding     string  `toml:"encoding" json:"encoding,omitempty"`           // "utf-8", "utf-16", "windows-1252", or another IANA name
+	HeaderLines  *int    `toml:"header_lines" json:"header_lines,omitempty"`   // lines before the first data row
+	TimeColumn   string  `toml:"time_column" json:"time_column,omitempty"`     // name, number from 1, or "none"
+	TimeFormat   string  `toml:"time_format" json:"time_format,omitempty"`     // "s", "ms", "us", "index", "d/m/y", "m/d/y", or "iso"
+	SamplingRate float64 `toml:"sampling_rate" json:"sampling_rate,omitempty"` // Hz
+}
+
+// Intervals describes a recorder's interval log.
+type Intervals struct {
+	Length float64 `toml:"length_s" json:"length_s,omitempty"` // s
+	Stamp  string  `toml:"stamp" json:"stamp,omitempty"`       // "start" or "end"
+}
+
+// A Column maps columns of an interval log. Source and Measures may hold {phase}, Source and Quantity {order} or
+// {order:02}.
+type Column struct {
+	Source   string `toml:"source" json:"source"`
+	Measures string `toml:"measures" json:"measures"`
+	Quantity string `toml:"quantity" json:"quantity"` // h0…h50, thd, rms, frequency, u2, p, q1, flag
+	Unit     string `toml:"unit" json:"unit"`         // "%" (of the fundamental), V, A, Hz, W, var
+}
