@@ -104,7 +104,7 @@ func BenchmarkRead(b *testing.B) {
 			scratch := k.Scratch()
 			b.ReportMetric(float64(k.Taps()), "taps")
 			for b.Loop() {
-				k.Read(y, x, 5.3, 1.0001, scratch)
+				k.Read(y, x, 8.3, 1.0001, scratch)
 			}
 			b.ReportMetric(float64(channels*2560*b.N)/b.Elapsed().Seconds()/1e6, "Msamples/s")
 		})
