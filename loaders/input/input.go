@@ -3,6 +3,8 @@
 package input
 
 import (
+	"io/fs"
+	"os"
 	"time"
 
 	"wavetally/harmonics/site"
@@ -13,6 +15,27 @@ type Options struct {
 	File site.File      // overrules what a loader guesses about a table of text
 	Zone *time.Location // of stamps without an offset; nil is UTC
 	Rate float64        // samples per second, for files that do not say; 0: not declared
+
+	// FS is where paths lead: nil is the disk, else the inside of an archive that is read in place. Loaders reach
+	// files only through [Options.Open] and [Options.ReadDir], so that they need not know which it is.
+	FS fs.FS
+}
+
+// Open opens the file at path for reading from its start. The size that its Stat gives is -1 when only reading the
+// whole file would tell (inside .gz).
+func (o Options) Open(path string) (fs.File, error) {
+	if o.FS != nil {
+		return o.FS.Open(path)
+	}
+	return os.Open(path)
+}
+
+// ReadDir lists a folder, sorted by name; it serves to find a companion file whatever its letter case.
+func (o Options) ReadDir(dir string) ([]fs.DirEntry, error) {
+	if o.FS != nil {
+		return fs.ReadDir(o.FS, dir)
+	}
+	return os.ReadDir(dir)
 }
 
 // Location is the zone of stamps without an offset, never nil.
