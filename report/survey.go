@@ -56,20 +56,21 @@ func (n Number) Known() bool { return !math.IsNaN(float64(n)) && !math.IsInf(flo
 // A Survey is one recording, measured and judged. The fields up to Doubts are survey.json; the rest feeds the
 // documents' charts and tables.
 type Survey struct {
-	Schema    string      `json:"schema"`
-	Program   Program     `json:"program"`
-	MadeAt    time.Time   `json:"made_at"`
-	Site      site.Sheet  `json:"site"`
-	Recording Recording   `json:"recording"`
-	Channels  []Channel   `json:"channels"`
-	Power     Power       `json:"power"`
-	Unbalance Unbalance   `json:"unbalance"`
-	Neutral   *Neutral    `json:"neutral"`
-	Plant     []Screening `json:"plant"`
-	Findings  []Finding   `json:"findings"`
-	Doubts    []Doubt     `json:"doubts"`
-	Headline  Headline    `json:"headline"`
-	Cautions  []string    `json:"safety_cautions"`
+	Schema    string       `json:"schema"`
+	Program   Program      `json:"program"`
+	MadeAt    time.Time    `json:"made_at"`
+	Site      site.Sheet   `json:"site"`
+	Recording Recording    `json:"recording"`
+	Channels  []Channel    `json:"channels"`
+	Power     Power        `json:"power"`
+	Unbalance Unbalance    `json:"unbalance"`
+	Neutral   *Neutral     `json:"neutral"`
+	Plant     []Screening  `json:"plant"`
+	Findings  []Finding    `json:"findings"`
+	Doubts    []Doubt      `json:"doubts"`
+	Headline  Headline     `json:"headline"`
+	Method    []MethodItem `json:"method"`
+	Cautions  []string     `json:"safety_cautions"`
 
 	Summary  *harmonics.Summary `json:"-"` // series, capture, spectrogram, power by order
 	Judged   []limits.Finding   `json:"-"` // as Findings, in the same order, with what live formulas need
@@ -100,7 +101,7 @@ type File struct {
 	Format     string `json:"format"`
 	SHA256     string `json:"sha256"`
 	Channels   int    `json:"channels"`
-	Samples    int64  `json:"samples"` // per channel
+	Samples    *int64 `json:"samples"` // per channel; null where several files make up the recording
 	SamplingHz Number `json:"sampling_hz"`
 }
 
@@ -258,19 +259,24 @@ type Screening struct {
 
 // A Finding is one limit applied to one value.
 type Finding struct {
-	RuleSet   string `json:"rule_set"`
-	Clause    string `json:"clause"`
-	Channel   string `json:"channel"`
-	Quantity  string `json:"quantity"`
-	Order     int    `json:"order"`
-	Statistic string `json:"statistic"`
-	Value     Number `json:"value"`
-	Limit     Number `json:"limit"`
-	Unit      string `json:"unit"`
-	Share     Number `json:"share_pct"`
-	Result    string `json:"result"`
-	Why       string `json:"why"`
-	Basis     string `json:"basis"`
+	RuleSet    string `json:"rule_set"`
+	Clause     string `json:"clause"`
+	Channel    string `json:"channel"`
+	Quantity   string `json:"quantity"`
+	Order      int    `json:"order"`
+	Statistic  string `json:"statistic"`
+	Value      Number `json:"value"`
+	ValueLow   Number `json:"value_low"` // percentile confidence joined with the declared uncertainty; null when unknown
+	ValueHigh  Number `json:"value_high"`
+	Limit      Number `json:"limit"`
+	Unit       string `json:"unit"`
+	Share      Number `json:"share_pct"`
+	Result     string `json:"result"`
+	Why        string `json:"why"`
+	Basis      string `json:"basis"`
+	N          int    `json:"n"`          // intervals behind value
+	Indicative bool   `json:"indicative"` // value is the nearest the record gives, not the statistic the rule asks for
+	Unverified bool   `json:"unverified"` // the limit is from memory, not corroborated
 }
 
 // A Doubt is anything in the data that weakens a number.

@@ -1,0 +1,3 @@
+package report
+
+func headlineOf(s *Survey) Headline { return Headline{} }
