@@ -13,6 +13,10 @@ type Sheet struct {
 	Limits   Limits    `toml:"limits" json:"limits"`
 	Channels []Channel `toml:"channel" json:"channel"`
 
+	File      File      `toml:"file" json:"file,omitzero"`           // overrules what a loader guesses
+	Intervals Intervals `toml:"intervals" json:"intervals,omitzero"` // of an interval log
+	Columns   []Column  `toml:"column" json:"column,omitempty"`      // of an interval log
+
 	// Guessed says, one sentence each, what was not declared and was taken from the recording instead.
 	Guessed []string `toml:"-" json:"guessed"`
 }
