@@ -17,6 +17,7 @@ type ChannelFacts struct {
 	AtLowest        int64   // samples that equal Lowest, to a tenth of Step
 	AtHighest       int64
 	FlatRuns        int64 // runs of three or more equal samples at Lowest or Highest
+	LongestFlat     int64 // samples, of those runs
 	ClippedWindows  int   // windows with such a run
 
 	// Step is the smallest difference seen between two neighbouring, unequal samples: the resolution of the file or
