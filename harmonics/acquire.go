@@ -40,8 +40,8 @@ type found struct {
 // acquire finds the strongest component of x within [low, high] Hz, at the given sampling rate. The fundamental need
 // not be the strongest component of all: a current may hold more third harmonic than fundamental.
 //
-// It is clear when it has at least a thousandth of the whole power and ten times what its surroundings have on
-// average (noise has a tail: among a hundred lines of pure noise the highest has about five times the mean).
+// It is clear when it has at least a thousandth of the whole power and twenty times what its surroundings have on
+// average: pure noise reaches that once in ten million looks (some thirty lines, exponentially distributed).
 func acquire(x []float64, rate, low, high float64) found {
 	n := min(len(x), int(acquireSeconds*rate))
 	if n < 16 || float64(n) < 2*rate/low {
@@ -92,7 +92,7 @@ func acquire(x []float64, rate, low, high float64) found {
 			count++
 		}
 	}
-	standsOut := count < 4 || level*level > 10*around/float64(count)
+	standsOut := count < 4 || level*level > 20*around/float64(count)
 	f.clear = f.rms*f.rms > power/1000 && standsOut
 	return f
 }

@@ -33,7 +33,13 @@ func noiseFloor(lines []float64, f frame, n, h int) (perLine float64, count int)
 	// The mean of n squares of noise is a gamma variate; its median lies below its mean by this factor (Wilson and
 	// Hilferty).
 	bias := 1 - 1/(9*float64(n))
-	return median / (bias * bias * bias), len(around)
+	perLine = median / (bias * bias * bias)
+	// A strong interharmonic close by leaks into the harmonic's lines. Its skirt falls steadily across them, so what
+	// the lines on either side hold on average is no less than what it puts into those between.
+	if a, b := f.cycles*h-2, f.cycles*h+2; a > 1 && b < len(lines) {
+		perLine = max(perLine, (lines[a]+lines[b])/2/float64(n))
+	}
+	return perLine, len(around)
 }
 
 // aboveNoise reports whether a subgroup (three lines) of mean square s over n windows stands clear of noise of

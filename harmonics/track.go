@@ -19,9 +19,13 @@ const (
 	// bent is the rms residual in radians above which a fit is not believed. Noise of 40 dB gives 0.001, an
 	// interharmonic of 2 % next to the fundamental 0.014; a step of 0.1 Hz gives 0.02, one of 0.5 Hz 0.1.
 	bent = 0.02
-	// jump is the second difference of the phases of three half-overlapping frames inside a window, in radians, above
-	// which the frequency is said to have stepped inside it: 2 Hz/s, or a step of 0.2 Hz.
-	jump = 0.03
+	// fineCycles is the length of the frames by which a window alone is measured where that fit is not believed.
+	fineCycles = 2
+	// The frequency is said to have stepped inside a window whose phases are further than jump, rms radians, from a
+	// parabola, or whose parabola says that it drifts faster than rush, in Hz/s. A step of 0.5 Hz passes the second in
+	// the middle of a window and the first near its ends. Noise of 40 dB gives 0.001.
+	jump = 0.003
+	rush = 2.5
 	// retune is how far the frequency may be from the carrier, as a share of it, before a new carrier is made.
 	retune = 0.002
 	// weak is the share of the usual amplitude below which the fundamental counts as lost.
@@ -35,15 +39,15 @@ type carrier struct {
 	cos, sin []float64 // Hann window times carrier, carrier phase 0 in the middle of the frame
 }
 
-func newCarrier(hz, rate float64) *carrier {
-	n := int(math.Round(frameCycles * rate / hz))
-	c := &carrier{rate: rate, length: n, cos: make([]float64, n), sin: make([]float64, n)}
-	c.hz = frameCycles * rate / float64(n)
+func newCarrier(cycles int, hz, rate float64) *carrier {
+	n := int(math.Round(float64(cycles) * rate / hz))
+	c := &carrier{length: n, cos: make([]float64, n), sin: make([]float64, n)}
+	c.hz = float64(cycles) * rate / float64(n)
 	for i := range n {
 		// The middle of samples 0..n-1 taken as the points of a periodic window is i = n/2.
 		t := float64(i) - float64(n)/2
 		hann := (1 + math.Cos(2*math.Pi*t/float64(n))) / float64(n) * math.Sqrt2
-		sin, cos := math.Sincos(2 * math.Pi * frameCycles * t / float64(n))
+		sin, cos := math.Sincos(2 * math.Pi * float64(cycles) * t / float64(n))
 		c.cos[i], c.sin[i] = hann*cos, -hann*sin
 	}
 	return c
@@ -73,14 +77,15 @@ type tracker struct {
 	rate      float64
 	low, high float64
 	carrier   *carrier
-	next      int // first sample of the next frame
+	fine      *carrier // of fineCycles; made when first needed
+	next      int      // first sample of the next frame
 	marks     []mark
 	hz        float64 // latest estimate
 	usual     float64 // running amplitude of the fundamental, rms
 }
 
 func newTracker(rate, hz, low, high, amp float64) *tracker {
-	return &tracker{rate: rate, low: low, high: high, carrier: newCarrier(hz, rate), hz: hz, usual: amp}
+	return &tracker{rate: rate, low: low, high: high, carrier: newCarrier(frameCycles, hz, rate), hz: hz, usual: amp}
 }
 
 // need returns the sample up to which the reference must be known before the window [start, start+length) can be
@@ -107,7 +112,7 @@ func (t *tracker) extend(x []float64, base int) {
 		t.usual += 0.02 * (m.amp - t.usual)
 		t.next += c.length / 2
 		if math.Abs(t.hz-c.hz) > retune*c.hz && newLength(t.hz, t.rate) != c.length {
-			t.carrier = newCarrier(t.hz, t.rate)
+			t.carrier, t.fine = newCarrier(frameCycles, t.hz, t.rate), nil
 		}
 	}
 }
@@ -139,7 +144,7 @@ func (t *tracker) window(start float64, cycles int, x []float64, base int) (leng
 	if !ok {
 		return length, t.lost(0)
 	}
-	if math.Abs(own.bend) > jump {
+	if own.residual > jump || math.Abs(own.drift) > rush {
 		flags |= Step
 	}
 	return float64(cycles) * t.rate / own.hz, flags | t.lost(own.amp)
@@ -153,8 +158,8 @@ func (t *tracker) lost(amp float64) Flags {
 }
 
 type phaseFit struct {
-	hz, residual, bend, amp float64
-	ok                      bool
+	hz, drift, residual, amp float64
+	ok                       bool
 }
 
 // fit lays a parabola through the marks within margin of the window, weighted by a raised cosine so that the ripple of
@@ -233,29 +238,59 @@ func parabola(s [5]float64, r [3]float64, count int) (a, b, c float64, ok bool) 
 	return a, b, c, true
 }
 
-// own measures the frequency from the samples of the window alone: three frames over its first, middle and last half.
+// own measures the frequency from the samples of the window alone: a parabola through the phases of short frames, a
+// cycle apart.
 func (t *tracker) own(start, length float64, x []float64, base int) (phaseFit, bool) {
-	var phase [3]float64
-	var at [3]float64
+	if t.fine == nil {
+		t.fine = newCarrier(fineCycles, t.hz, t.rate)
+	}
+	c := t.fine
+	count := int(float64(fineCycles)*length/float64(c.length)) - 1
+	var at, phase []float64
 	var amp float64
-	c := t.carrier
-	for i := range 3 {
-		from := int(math.Round(start + (length-float64(c.length))*float64(i)/2))
+	for i := range count {
+		from := int(math.Round(start + (length-float64(c.length))*float64(i)/float64(count-1)))
 		if from < base || from-base+c.length > len(x) {
 			return phaseFit{}, false
 		}
 		p := c.phasor(x[from-base:])
-		phase[i], at[i] = cmplx.Phase(p), float64(from)+float64(c.length)/2
-		amp += cmplx.Abs(p) / 3
+		m := cmplx.Phase(p)
+		here := float64(from) + float64(c.length)/2
 		if i > 0 {
-			ahead := phase[i-1] + 2*math.Pi*c.hz/t.rate*(at[i]-at[i-1])
-			phase[i] += 2 * math.Pi * math.Round((ahead-phase[i])/(2*math.Pi))
+			ahead := phase[i-1] + 2*math.Pi*c.hz/t.rate*(here-at[i-1])
+			m += 2 * math.Pi * math.Round((ahead-m)/(2*math.Pi))
+		}
+		at, phase = append(at, here), append(phase, m)
+		amp += cmplx.Abs(p) / float64(count)
+	}
+	if count < 3 {
+		return phaseFit{}, false
+	}
+	half := length / 2
+	var s [5]float64
+	var r [3]float64
+	for i := range at {
+		u, p := (at[i]-start-half)/half, 1.0
+		for k := range s {
+			s[k] += p
+			if k < 3 {
+				r[k] += p * (phase[i] - phase[0])
+			}
+			p *= u
 		}
 	}
-	f := phaseFit{
-		hz:   t.rate * (phase[2] - phase[0]) / (2 * math.Pi * (at[2] - at[0])),
-		bend: (phase[2]-phase[1])*(at[1]-at[0])/(at[2]-at[1]) - (phase[1] - phase[0]),
-		amp:  amp,
+	a, b, bend, ok := parabola(s, r, count)
+	if !ok {
+		return phaseFit{}, false
 	}
+	var left float64
+	for i := range at {
+		u := (at[i] - start - half) / half
+		d := phase[i] - phase[0] - (a + b*u + bend*u*u)
+		left += d * d
+	}
+	perSecond := t.rate / half
+	f := phaseFit{hz: b * perSecond / (2 * math.Pi), drift: bend * perSecond * perSecond / math.Pi,
+		residual: math.Sqrt(left / float64(count)), amp: amp}
 	return f, f.hz > t.low && f.hz < t.high
 }
