@@ -49,6 +49,7 @@ func Build(in Inputs) *Survey {
 		s.Plant = []Screening{}
 	}
 	s.Headline = headlineOf(s)
+	s.Method = methodOf(s)
 	return s
 }
 

@@ -1,0 +1,301 @@
+package report
+
+import (
+	"fmt"
+	"math"
+	"slices"
+	"strings"
+
+	"wavetally/harmonics"
+	"wavetally/harmonics/limits"
+)
+
+// answersOf says for voltage and for current how they stand to each rule set that was applied.
+func answersOf(s *Survey) []string {
+	out := []string{}
+	if text := pointAnswer(s); text != "" {
+		out = append(out, text)
+	}
+	for _, g := range groups[:2] {
+		sets := s.setsFor(g)
+		for _, set := range sets {
+			out = append(out, answer(s, g, set))
+		}
+		if len(sets) == 0 && len(g.channels(s)) > 0 {
+			out = append(out, unjudged(s, g))
+		}
+	}
+	return out
+}
+
+// pointAnswer says when limits that are meant for the point of common coupling were applied elsewhere.
+func pointAnswer(s *Survey) string {
+	switch {
+	case len(s.Findings) == 0 || s.Site.Supply.Point == "PCC":
+		return ""
+	case s.Site.Supply.Point == "":
+		return "Whether this is the point of common coupling (PCC) was not declared: limits meant for it are for information here."
+	}
+	return "This point is inside the installation: limits meant for the point of common coupling (PCC) are for information here."
+}
+
+// setsFor lists the rule sets that have findings on the group, in the order of the findings.
+func (s *Survey) setsFor(g group) []string {
+	var out []string
+	for _, f := range s.Findings {
+		if g.holds(f.Channel) && !slices.Contains(out, f.RuleSet) {
+			out = append(out, f.RuleSet)
+		}
+	}
+	return out
+}
+
+// picked are the findings of one rule set on one group, the highest share of the limit first.
+func (s *Survey) picked(g group, set string) []Finding {
+	var out []Finding
+	for _, f := range s.Findings {
+		if f.RuleSet == set && g.holds(f.Channel) {
+			out = append(out, f)
+		}
+	}
+	slices.SortStableFunc(out, byShare)
+	return out
+}
+
+// byShare puts the highest share first, and findings without one last.
+func byShare(a, b Finding) int {
+	switch {
+	case !a.Share.Known() && !b.Share.Known():
+		return 0
+	case !b.Share.Known() || a.Share > b.Share:
+		return -1
+	case !a.Share.Known() || a.Share < b.Share:
+		return 1
+	}
+	return 0
+}
+
+func withResult(findings []Finding, result string) []Finding {
+	var out []Finding
+	for _, f := range findings {
+		if f.Result == result {
+			out = append(out, f)
+		}
+	}
+	return out
+}
+
+func answer(s *Survey, g group, set string) string {
+	all := s.picked(g, set)
+	over, open, in := withResult(all, limits.Exceeds), withResult(all, limits.Undecided), withResult(all, limits.Within)
+	missed := withResult(all, limits.NotAssessed)
+	var text string
+	switch {
+	case len(over) > 0:
+		text = fmt.Sprintf("%s exceeds %s: %s%s.%s", g.name, RuleTitle(set), s.told(over[0]), s.overText(over[0]), alsoOver(over[1:]))
+	case len(open) > 0 && open[0].Indicative:
+		text = fmt.Sprintf("%s, indicative only: %s. Nothing can be said to be within %s, because %s.", g.name, s.told(open[0]), RuleTitle(set), firstClause(open[0].Why))
+	case len(open) > 0:
+		text = fmt.Sprintf("%s is undecided under %s: %s; %s.", g.name, RuleTitle(set), s.told(open[0]), firstClause(open[0].Why))
+	case len(in) > 0:
+		text = fmt.Sprintf("%s is within %s%s: the highest share of a limit is %s.", g.name, RuleTitle(set), asFar(missed), s.told(in[0]))
+	default:
+		return fmt.Sprintf("%s was not assessed under %s: %s.", g.name, RuleTitle(set), firstClause(missed[0].Why))
+	}
+	return text + tally(all, over, open, missed)
+}
+
+func asFar(missed []Finding) string {
+	if len(missed) > 0 {
+		return " as far as assessed"
+	}
+	return ""
+}
+
+// told is one finding in words: "order 5 on V2, 3.82 % of the nominal voltage 230.9 V, between 3.76 % and 3.9 %, limit 5 % (76.4 % of it;
+// 95th percentile of 10 min values over a week)".
+func (s *Survey) told(f Finding) string {
+	value, limit := Apart(float64(f.Value), float64(f.Limit))
+	text := fmt.Sprintf("%s on %s, %s %s of the %s", QuantityName(f.Quantity, f.Order), f.Channel, value, f.Unit, f.Basis)
+	if f.Indicative {
+		return text + fmt.Sprintf(", %s %% of the limit of %s %s", Sig(float64(f.Share)), limit, f.Unit)
+	}
+	if b := Bounds(f); b != "" {
+		text += ", " + b
+	}
+	return text + fmt.Sprintf(", limit %s %s (%s %% of it; %s)", limit, f.Unit, Sig(float64(f.Share)), f.Statistic)
+}
+
+// Bounds says how firm a finding's value is: "between 3.76 % and 3.9 %"; "" when that is not known. What the bounds
+// hold is said once, in the method.
+func Bounds(f Finding) string {
+	if !f.ValueLow.Known() || !f.ValueHigh.Known() {
+		return ""
+	}
+	low, high := Apart(float64(f.ValueLow), float64(f.ValueHigh))
+	return fmt.Sprintf("between %s %s and %s %s", low, f.Unit, high, f.Unit)
+}
+
+// Firmness is the whole sentence on how firm a percentile is: "95th percentile 4.8 %, between 4.5 % and 5.1 % with 95 %
+// confidence, limit 5 %".
+func Firmness(f Finding) string {
+	value, limit := Apart(float64(f.Value), float64(f.Limit))
+	name, _, _ := strings.Cut(f.Statistic, " of ")
+	text := fmt.Sprintf("%s %s %s", name, value, f.Unit)
+	if b := Bounds(f); b != "" {
+		text += ", " + b + " with 95 % confidence"
+	}
+	return text + fmt.Sprintf(", limit %s %s", limit, f.Unit)
+}
+
+// alsoShown is how many further findings over the limit one answer names.
+const alsoShown = 3
+
+// alsoOver names further orders over the limit, each once, on the channel where it is worst.
+func alsoOver(rest []Finding) string {
+	var parts []string
+	seen := map[string]bool{}
+	for _, f := range rest {
+		name := QuantityName(f.Quantity, f.Order) + " on " + f.Channel
+		if seen[name] || len(parts) == alsoShown {
+			continue
+		}
+		seen[name] = true
+		parts = append(parts, fmt.Sprintf("%s (%s %% of the limit)", name, Sig(float64(f.Share))))
+	}
+	if len(parts) == 0 {
+		return ""
+	}
+	return " Also over: " + strings.Join(parts, ", ") + "."
+}
+
+// tally ends an answer with how many findings are what, where they are not all of one kind.
+func tally(all, over, open, missed []Finding) string {
+	var parts []string
+	if len(over) > 0 {
+		parts = append(parts, verb(len(over), "exceeds", "exceed"))
+	}
+	if len(open) > 0 && len(open) < len(all) {
+		parts = append(parts, verb(len(open), "is undecided", "are undecided"))
+	}
+	if len(missed) > 0 {
+		parts = append(parts, verb(len(missed), "was not assessed", "were not assessed"))
+	}
+	if len(parts) == 0 {
+		return ""
+	}
+	return fmt.Sprintf(" Of %s %s.", plural(len(all), "finding"), list(parts))
+}
+
+func verb(n int, one, many string) string {
+	if n == 1 {
+		many = one
+	}
+	return fmt.Sprintf("%d %s", n, many)
+}
+
+// list joins words as a sentence does: "a", "a and b", "a, b and c".
+func list(parts []string) string {
+	if len(parts) < 2 {
+		return strings.Join(parts, "")
+	}
+	last := len(parts) - 1
+	return strings.Join(parts[:last], ", ") + " and " + parts[last]
+}
+
+// firstClause is a reason without its remedy, which stands elsewhere, and without a full stop.
+func firstClause(why string) string {
+	head, _, _ := strings.Cut(why, ";")
+	return strings.TrimRight(strings.TrimSpace(head), ".")
+}
+
+// overText says how often the value was over the limit, where the series is at hand and reproduces the finding.
+func (s *Survey) overText(f Finding) string {
+	over, n := s.overShare(f)
+	if n == 0 {
+		return ""
+	}
+	return fmt.Sprintf(", over it in %s %% of %d valid 10 min intervals", Sig(100*float64(over)/float64(n)), n)
+}
+
+// overShare counts the 10 min intervals over the limit of a weekly finding. The series is only trusted when its
+// percentile is the finding's value: a rule set may define its total in a way that the series does not hold.
+func (s *Survey) overShare(f Finding) (over, n int) {
+	i := s.indexOf(f)
+	if s.Summary == nil || i < 0 || !strings.Contains(f.Statistic, "10 min") || len(s.Summary.Tens) == 0 {
+		return 0, 0
+	}
+	v := s.intervalValues(s.Judged[i])
+	for _, x := range v {
+		if x > float64(f.Limit) {
+			over++
+		}
+	}
+	if !reproduces(v, float64(f.Value)) {
+		return 0, 0
+	}
+	return over, len(v)
+}
+
+func (s *Survey) indexOf(f Finding) int {
+	if len(s.Judged) != len(s.Findings) {
+		return -1
+	}
+	return slices.IndexFunc(s.Findings, func(g Finding) bool {
+		return g.RuleSet == f.RuleSet && g.Channel == f.Channel && g.Quantity == f.Quantity && g.Order == f.Order && g.Statistic == f.Statistic
+	})
+}
+
+// intervalValues are the valid 10 min values of what a finding limits, in its unit.
+func (s *Survey) intervalValues(f limits.Finding) []float64 {
+	var out []float64
+	for c := range s.Summary.Channels {
+		if s.Summary.Channels[c].Role != f.Channel {
+			continue
+		}
+		for _, iv := range s.Summary.Tens {
+			if iv.Valid() {
+				out = append(out, findingValue(iv.Channels[c], f))
+			}
+		}
+	}
+	return out
+}
+
+func findingValue(l harmonics.Levels, f limits.Finding) float64 {
+	level := l.THC
+	if f.Order > 0 {
+		level = l.H[f.Order]
+	}
+	if math.IsNaN(f.BasisSize) {
+		return 100 * level / l.H[1]
+	}
+	return 100 * level / f.BasisSize
+}
+
+// reproduces reports whether want is one of the upper values of v, as a percentile by nearest rank is. A relative
+// difference of 1e-9 is rounding.
+func reproduces(v []float64, want float64) bool {
+	return slices.ContainsFunc(v, func(x float64) bool { return math.Abs(x-want) <= 1e-9*math.Abs(want) })
+}
+
+// unjudged describes a group to which no limit was applied.
+func unjudged(s *Survey, g group) string {
+	var worst *Channel
+	for _, c := range g.channels(s) {
+		if c.THD.Mean.Known() && (worst == nil || c.THD.Mean > worst.THD.Mean) {
+			worst = c
+		}
+	}
+	if worst == nil {
+		return fmt.Sprintf("%s: no limit was applied, and no distortion could be measured.", g.name)
+	}
+	top := Harmonic{Pct: NaN}
+	for _, h := range worst.Harmonics {
+		if h.Order > 1 && h.Pct.Known() && !(h.Pct <= top.Pct) {
+			top = h
+		}
+	}
+	return fmt.Sprintf("%s, no limit applied: THD is %s %% of the fundamental on %s, the largest order is %d with %s %% (%s).", g.name,
+		Sig(float64(worst.THD.Mean)), worst.Name, top.Order, Sig(float64(top.Pct)), Quantity(float64(top.RMS), worst.Unit))
+}
