@@ -38,6 +38,10 @@ type File struct {
 	Name   string // base name, for display
 	Path   string // as opened
 	Format string // such as "COMTRADE 1999 BINARY" or "CSV"
+
+	// Reading says in one line how the file was understood, where its format leaves that open (a table of text);
+	// else "". For display.
+	Reading string
 }
 
 // A Header is all that is known of a recording before its samples.

@@ -1,0 +1,349 @@
+package table
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"slices"
+	"strconv"
+	"strings"
+
+	"wavetally/harmonics/site"
+)
+
+// A guesser finds the columns of a table whose dialect is known.
+type guesser struct {
+	dialect
+	encoding Encoding
+	declared site.File
+	lines    []line
+
+	first  int         // index in lines of the first row
+	kinds  []Kind      // of each column
+	values [][]float64 // [column][row] of the first rows, NaN where there is no number
+	texts  [][]string  // [column][row] where kinds is stampKind
+}
+
+func (g *guesser) layout() (Layout, error) {
+	g.classify()
+	if err := g.findFirst(); err != nil {
+		return Layout{}, err
+	}
+	g.readRows()
+	l := Layout{Encoding: g.encoding, Delimiter: g.delimiter, Mark: g.mark, Offset: int64(g.lines[g.first].offset), Line: g.lines[g.first].number}
+	l.Columns = g.headings()
+	if err := g.clock(&l); err != nil {
+		return Layout{}, err
+	}
+	l.Facts = readFacts(g.lines[:g.first], g.encoding, l.Clock.Order)
+	g.chooseValues(&l)
+	return l, nil
+}
+
+// row splits lines[i], less one delimiter at its end beyond the table's width.
+func (g *guesser) row(i int) [][]byte {
+	row := cells(nil, g.lines[i].text, g.delimiter)
+	if len(row) == g.width+1 && len(Trim(row[g.width])) == 0 {
+		row = row[:g.width]
+	}
+	return row
+}
+
+// classify finds what each column mostly holds, over all rows that look like data.
+func (g *guesser) classify() {
+	counts := make([]map[Kind]int, g.width)
+	for i := range counts {
+		counts[i] = map[Kind]int{}
+	}
+	for i := range g.lines {
+		row := g.row(i)
+		if len(row) != g.width {
+			continue
+		}
+		if score, _ := rowScore(row, g.mark); score == 0 {
+			continue
+		}
+		for c, cell := range row {
+			counts[c][kindOf(Trim(cell), g.mark)]++
+		}
+	}
+	g.kinds = make([]Kind, g.width)
+	for c, n := range counts {
+		g.kinds[c] = dominant(n)
+	}
+}
+
+// dominant is what a column holds: nothing when four cells in five are empty, else the commonest of number, stamp and
+// text. Marks for missing values say nothing about a column unless there is nothing else.
+func dominant(n map[Kind]int) Kind {
+	filled := n[Number] + n[stampKind] + n[Text] + n[Missing]
+	switch {
+	case filled*5 <= n[Empty]:
+		return Empty
+	case n[stampKind] > n[Number] && n[stampKind] >= n[Text]:
+		return stampKind
+	case n[Number] >= n[Text] && n[Number] > 0:
+		return Number
+	case n[Text] > 0:
+		return Text
+	}
+	return Missing
+}
+
+// findFirst finds the first row: every column holds in it what it holds elsewhere.
+func (g *guesser) findFirst() error {
+	if g.declared.HeaderLines != nil {
+		g.first = max(0, *g.declared.HeaderLines)
+		return nil
+	}
+	for i := range g.lines {
+		if g.fits(g.row(i)) {
+			g.first = i
+			return nil
+		}
+	}
+	return ErrNoTable
+}
+
+func (g *guesser) fits(row [][]byte) bool {
+	if len(row) != g.width {
+		return false
+	}
+	found := false
+	for c, cell := range row {
+		cell = Trim(cell)
+		switch kind := kindOf(cell, g.mark); g.kinds[c] {
+		case Number:
+			if kind == Text || kind == stampKind && !bytes.ContainsAny(cell, ".") {
+				return false
+			}
+			found = found || kind == Number
+		case stampKind:
+			if kind != stampKind && kind != Number {
+				return false
+			}
+		}
+	}
+	return found
+}
+
+// readRows keeps the numbers and stamps of the first rows.
+func (g *guesser) readRows() {
+	g.values = make([][]float64, g.width)
+	g.texts = make([][]string, g.width)
+	for i := g.first; i < len(g.lines); i++ {
+		row := g.row(i)
+		if len(row) != g.width {
+			continue
+		}
+		for c, cell := range row {
+			if g.kinds[c] == stampKind || g.kinds[c] == Text {
+				g.texts[c] = append(g.texts[c], string(Trim(cell)))
+			}
+			v, _ := Cell(cell, g.mark, 0)
+			g.values[c] = append(g.values[c], v)
+		}
+	}
+}
+
+// headings takes names and units from the lines right above the first row.
+func (g *guesser) headings() []Column {
+	columns := make([]Column, g.width)
+	var names, units []string
+	looked := 0
+	for i := g.first - 1; i >= 0 && looked < 6; i-- {
+		if len(Trim(g.lines[i].text)) == 0 {
+			continue
+		}
+		looked++
+		row := g.headingRow(i)
+		if row == nil {
+			if names != nil {
+				break
+			}
+			continue
+		}
+		if units == nil && isUnitRow(row) {
+			units = row
+			continue
+		}
+		if names == nil && g.isNameRow(row) {
+			names = row
+		} else if names != nil {
+			break
+		}
+	}
+	for c := range columns {
+		if names != nil && c < len(names) {
+			columns[c].Name, columns[c].Unit = splitUnit(names[c])
+		}
+		if units != nil && c < len(units) {
+			if u := bareUnit(units[c]); u != "" && u != "-" {
+				columns[c].Unit = u
+				if names != nil && c < len(names) {
+					if name, unit := splitUnit(names[c]); unit != "" && !strings.EqualFold(unit, u) {
+						columns[c].Name = names[c]
+					} else {
+						columns[c].Name = name
+					}
+				}
+			}
+		}
+	}
+	return columns
+}
+
+// headingRow returns the cells of a line above the first row as text, nil when it has not about the table's width.
+func (g *guesser) headingRow(i int) []string {
+	row := cells(nil, g.lines[i].text, g.delimiter)
+	for len(row) > g.width && len(Trim(row[len(row)-1])) == 0 {
+		row = row[:len(row)-1]
+	}
+	if len(row) > g.width || len(row) < g.width-1 || len(row) < 1 || len(row) < 2 && g.width > 1 {
+		return nil
+	}
+	texts := make([]string, len(row))
+	for c, cell := range row {
+		texts[c] = strings.ReplaceAll(g.encoding.String(Trim(cell)), `""`, `"`)
+		if c == 0 {
+			texts[c] = strings.TrimSpace(strings.TrimLeft(texts[c], "#%!;"))
+		}
+	}
+	return texts
+}
+
+func isUnitRow(row []string) bool {
+	known, other := 0, 0
+	for _, cell := range row {
+		switch u := bareUnit(cell); {
+		case u == "" || u == "-":
+		case knownUnit(u):
+			known++
+		default:
+			other++
+		}
+	}
+	return known > 0 && other*3 <= known && (known > 1 || len(row) < 3)
+}
+
+// isNameRow asks for mostly text: a line of settings above the table has a number behind its word.
+func (g *guesser) isNameRow(row []string) bool {
+	text, number := 0, 0
+	for _, cell := range row {
+		switch kind := kindOf([]byte(cell), 0); {
+		case kind == Text:
+			text++
+		case kind != Empty:
+			number++
+		}
+	}
+	return text > 0 && text > number && (len(row) > 2 || number == 0)
+}
+
+// chooseValues marks what holds measured values, and says of the rest why it is not read.
+func (g *guesser) chooseValues(l *Layout) {
+	for c := range l.Columns {
+		col := &l.Columns[c]
+		switch {
+		case col.Use == Time || col.Why != "":
+		case g.kinds[c] == Empty || g.kinds[c] == Missing:
+			col.Why = "it is empty"
+		case g.kinds[c] == Text || g.kinds[c] == stampKind:
+			col.Why = "it holds text"
+		default:
+			col.Use = Value
+		}
+	}
+}
+
+// increasing reports whether a column never falls, but for rare resets, and rises overall.
+func increasing(values []float64) bool {
+	up, down := 0, 0
+	last := math.NaN()
+	for _, v := range values {
+		if v > last {
+			up++
+		} else if v < last {
+			down++
+		}
+		if !math.IsNaN(v) {
+			last = v
+		}
+	}
+	return up > 0 && down*50 <= up
+}
+
+// evenSteps reports whether the steps of a column are alike, as of a time or a running number and of no waveform.
+func evenSteps(values []float64) bool {
+	if len(values) < 4 {
+		return false
+	}
+	steps := make([]float64, 0, len(values)-1)
+	for i := 1; i < len(values); i++ {
+		steps = append(steps, values[i]-values[i-1])
+	}
+	sorted := slices.Clone(steps)
+	slices.Sort(sorted)
+	middle := sorted[len(sorted)/2]
+	if !(middle > 0) {
+		return false
+	}
+	even := 0
+	for _, s := range steps {
+		if math.Abs(s-middle) < 0.6*middle {
+			even++
+		}
+	}
+	return even*10 >= len(steps)*9
+}
+
+// whole reports whether all values are whole and rise by the same whole step.
+func whole(values []float64) bool {
+	if len(values) < 2 {
+		return false
+	}
+	step := values[1] - values[0]
+	if step != math.Trunc(step) || step <= 0 {
+		return false
+	}
+	even := 0
+	for i, v := range values {
+		if v != math.Trunc(v) {
+			return false
+		}
+		if i > 0 && v-values[i-1] == step {
+			even++
+		}
+	}
+	return even*10 >= (len(values)-1)*9
+}
+
+// columnCalled finds the column that the site sheet names, by its heading or its number from 1.
+func columnCalled(columns []Column, called string) (int, error) {
+	for c, col := range columns {
+		if col.Name != "" && strings.EqualFold(col.Name, called) {
+			return c, nil
+		}
+	}
+	if n, err := strconv.Atoi(called); err == nil && n >= 1 && n <= len(columns) {
+		return n - 1, nil
+	}
+	return 0, &FormatError{Msg: fmt.Sprintf("time_column = %q in the site sheet is no column of this table (it has %s); name one, or \"none\"", called, list(columns))}
+}
+
+// list names the columns for a message.
+func list(columns []Column) string {
+	var names []string
+	for c, col := range columns {
+		if c == 12 {
+			names = append(names, "…")
+			break
+		}
+		if col.Name == "" {
+			names = append(names, strconv.Itoa(c+1))
+		} else {
+			names = append(names, strconv.Quote(col.Name))
+		}
+	}
+	return strings.Join(names, ", ")
+}
