@@ -8,6 +8,9 @@ import (
 // Windows in a 3 s interval, IEC 61000-4-30: 150 or 180 cycles.
 const windowsIn3s = 15
 
+// windowSlack is a little more than a window, s: what a recording that ends at a mark lacks of its last one.
+const windowSlack = 0.3
+
 // keptThrees is how many 3 s intervals are kept for charts and tables: one hour.
 const keptThrees = 1200
 
@@ -32,6 +35,7 @@ type collector struct {
 	lastHz   float64
 	whole    []total // [channel]
 	three    interval
+	carry    interval // the 3 s interval that was in progress at a 10 min mark
 	ten      interval
 	threes   []Interval
 	tens     []Interval
@@ -88,6 +92,7 @@ func newCollector(channels []channel) *collector {
 	c.hz.min, c.hz.max = math.Inf(1), math.Inf(-1)
 	c.whole = make([]total, len(channels))
 	c.three.channels = make([]levelSums, len(channels))
+	c.carry.channels = make([]levelSums, len(channels))
 	c.ten.channels = make([]levelSums, len(channels))
 	c.perShare, c.perLevel = make([][]sample, len(channels)), make([][]sample, len(channels))
 	for k := range channels {
@@ -134,11 +139,15 @@ func (c *collector) window(b *batch, i int, flags Flags, w *worker) {
 		c.lock.Steps++
 	}
 	c.three.add(cut, r, flags)
+	if c.carry.total > 0 {
+		c.carry.add(cut, r, flags)
+	}
 	c.ten.add(cut, r, flags)
+	c.closeThree(&c.carry)
+	c.closeThree(&c.three)
 	if flags != 0 {
 		c.count.Flagged++
 		c.lastHz = 0
-		c.closeThree(cut)
 		return
 	}
 	c.count.Used++
@@ -156,7 +165,6 @@ func (c *collector) window(b *batch, i int, flags Flags, w *worker) {
 	}
 	c.power.add(c.wires, r)
 	c.capture.offer(c, b, i, w)
-	c.closeThree(cut)
 }
 
 // turn returns, for each order, the factor that brings a line's phase to where the reference's fundamental has phase 0.
@@ -235,11 +243,18 @@ func (c *collector) keepLines(cut *cut, r *windowResult) {
 
 // boundary closes intervals when a window begins a new one: at a 10 min mark, and after a break.
 func (c *collector) boundary(cut *cut) {
-	if cut.breaks && c.three.total > 0 {
-		c.three.reset() // 3 s intervals have no gap: what was begun is dropped
+	if cut.breaks { // 3 s intervals have no gap: what was begun is dropped
+		c.three.reset()
+		c.carry.reset()
 	}
 	c.ten.broken = c.ten.broken || cut.breaks && c.ten.total > 0
 	if cut.mark {
+		// IEC 61000-4-30, 4.5: the 3 s interval in progress at a mark goes on beside the new one. One that has hardly
+		// begun is dropped, so that ten minutes hold 200 of them whatever the frequency does.
+		c.carry, c.three = c.three, c.carry
+		if c.carry.total <= windowsIn3s/2 {
+			c.carry.reset()
+		}
 		c.three.reset()
 		c.closeTen(true)
 		c.ten.whole = true
@@ -320,12 +335,12 @@ func total2(h []float64) float64 {
 }
 
 // closeThree ends a 3 s interval when it has its fifteen windows.
-func (c *collector) closeThree(cut *cut) {
-	if c.three.total < windowsIn3s || c.linesOnly {
+func (c *collector) closeThree(t *interval) {
+	if t.total < windowsIn3s || c.linesOnly {
 		return
 	}
-	v := c.three.result(windowsIn3s, true)
-	c.three.reset()
+	v := t.result(windowsIn3s, true)
+	t.reset()
 	if len(c.threes) < keptThrees {
 		c.threes = append(c.threes, v)
 	}
@@ -352,8 +367,8 @@ func (c *collector) closeTen(ended bool) {
 		if t.windows > 0 {
 			want = int(math.Round(tenMinutes * t.hz / float64(t.windows) / float64(c.frame.cycles)))
 		}
-		// No window may be lacking: the windows that are there must span the ten minutes, to half a window.
-		spans := t.whole && ended && !t.broken && math.Abs(float64(t.total-want)) <= 1 && t.end-t.at > tenMinutes-0.15
+		// No window may be lacking, but for the last one of a recording that ends with its interval.
+		spans := t.whole && ended && !t.broken && math.Abs(float64(t.total-want)) <= 1 && t.end-t.at > tenMinutes-windowSlack
 		c.tens = append(c.tens, t.result(want, spans))
 	}
 	t.reset()
@@ -361,7 +376,7 @@ func (c *collector) closeTen(ended bool) {
 
 // finish closes what is open.
 func (c *collector) finish() {
-	c.closeTen(c.ten.end-c.ten.at > tenMinutes-0.3) // within a window of its mark
+	c.closeTen(c.ten.end-c.ten.at > tenMinutes-windowSlack)
 	c.day.close()
 	c.events.finish()
 }

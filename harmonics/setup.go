@@ -156,7 +156,7 @@ func newFrame(rate, hz float64, cycles int) frame {
 	f := frame{cycles: cycles, perCycle: 256}
 	f.top = min(MaxOrder, int(nyquistShare*rate/2/hz*1.0005))
 	// As many points as samples will do; at much fewer, the filter against folding would cost more than it saves.
-	for _, n := range []int{128, 160, 192, 256} {
+	for _, n := range []int{16, 32, 64, 128, 160, 192, 256} {
 		if float64(n)*hz >= 0.99*rate {
 			f.perCycle = n
 			break
