@@ -3,6 +3,7 @@ package harmonics
 import (
 	"math"
 	"math/cmplx"
+	"slices"
 )
 
 // The fundamental is followed by its phase. The reference channel is cut into frames of five cycles, half overlapping;
@@ -19,6 +20,9 @@ const (
 	// bent is the rms residual in radians above which a fit is not believed. Noise of 40 dB gives 0.001, an
 	// interharmonic of 2 % next to the fundamental 0.014; a step of 0.1 Hz gives 0.02, one of 0.5 Hz 0.1.
 	bent = 0.02
+	// noisy is the ratio of that residual to the scatter of neighbouring phases up to which it is noise after all: heavy
+	// noise scatters every phase, a step bends the line at one place only.
+	noisy = 2.5
 	// fineCycles is the length of the frames by which a window alone is measured where that fit is not believed.
 	fineCycles = 2
 	// The frequency is said to have stepped inside a window whose phases are further than jump, rms radians, from a
@@ -80,8 +84,9 @@ type tracker struct {
 	fine      *carrier // of fineCycles; made when first needed
 	next      int      // first sample of the next frame
 	marks     []mark
-	hz        float64 // latest estimate
-	usual     float64 // running amplitude of the fundamental, rms
+	hz        float64   // latest estimate
+	left      []float64 // scratch: what the last fit left over
+	usual     float64   // running amplitude of the fundamental, rms
 }
 
 func newTracker(rate, hz, low, high, amp float64) *tracker {
@@ -137,7 +142,7 @@ func (t *tracker) window(start float64, cycles int, x []float64, base int) (leng
 		length = float64(cycles) * t.rate / fit.hz // the fit hardly depends on where the window ends; once more settles it
 		fit = t.fit(start, length, reach*t.rate)
 	}
-	if fit.ok && fit.residual <= bent {
+	if fit.ok && fit.residual <= max(bent, noisy*fit.scatter) {
 		return float64(cycles) * t.rate / fit.hz, t.lost(fit.amp)
 	}
 	own, ok := t.own(start, length, x, base)
@@ -158,8 +163,8 @@ func (t *tracker) lost(amp float64) Flags {
 }
 
 type phaseFit struct {
-	hz, drift, residual, amp float64
-	ok                       bool
+	hz, drift, residual, scatter, amp float64
+	ok                                bool
 }
 
 // fit lays a parabola through the marks within margin of the window, weighted by a raised cosine so that the ripple of
@@ -200,6 +205,7 @@ func (t *tracker) fit(start, length, margin float64) phaseFit {
 		return phaseFit{}
 	}
 	var residual float64
+	t.left = t.left[:0]
 	for _, m := range t.marks {
 		u := (m.at - middle) / half
 		if u <= -1 || u >= 1 {
@@ -207,10 +213,27 @@ func (t *tracker) fit(start, length, margin float64) phaseFit {
 		}
 		d := m.phase - first - (a + b*u + c*u*u)
 		residual += (1 + math.Cos(math.Pi*u)) * d * d
+		t.left = append(t.left, d)
 	}
 	f := phaseFit{hz: b / half * t.rate / (2 * math.Pi), residual: math.Sqrt(residual / s[0]), amp: amp / s[0]}
+	f.scatter = scatter(t.left)
 	f.ok = f.hz > t.low && f.hz < t.high
 	return f
+}
+
+// scatter estimates the standard deviation of noise in d from its second differences, by their median; a step or a slow
+// swing in d does not count. It changes d.
+func scatter(d []float64) float64 {
+	if len(d) < 5 {
+		return 0
+	}
+	for i := 1; i+1 < len(d); i++ {
+		d[i-1] = math.Abs(d[i-1] - 2*d[i] + d[i+1])
+	}
+	d = d[:len(d)-2]
+	slices.Sort(d)
+	// The median of |x| is 0.6745 standard deviations; a second difference of independent values has √6 of them.
+	return d[len(d)/2] / (0.6745 * math.Sqrt(6))
 }
 
 // parabola solves the normal equations for a + b·u + c·u²; with few points it is a straight line.
