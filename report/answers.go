@@ -299,3 +299,40 @@ func unjudged(s *Survey, g group) string {
 	return fmt.Sprintf("%s, no limit applied: THD is %s %% of the fundamental on %s, the largest order is %d with %s %% (%s).", g.name,
 		Sig(float64(worst.THD.Mean)), worst.Name, top.Order, Sig(float64(top.Pct)), Quantity(float64(top.RMS), worst.Unit))
 }
+
+// A Lead is the finding that decides how voltage or current stands to one rule set.
+type Lead struct {
+	Group   string // "Voltage" or "Current"
+	RuleSet string // for people
+	Finding Finding
+}
+
+// Leads lists, for voltage and then current, each rule set's gravest finding, the one with the highest share of its
+// limit among equals.
+func Leads(s *Survey) []Lead {
+	var out []Lead
+	for _, g := range groups[:2] {
+		for _, set := range s.setsFor(g) {
+			all := s.picked(g, set)
+			lead := all[0]
+			for _, f := range all {
+				if graver(f, lead) {
+					lead = f
+				}
+			}
+			out = append(out, Lead{g.name, RuleTitle(set), lead})
+		}
+	}
+	return out
+}
+
+// Tally is how many findings have which result: "4 exceed, 1 is undecided and 670 are within, of 675".
+func Tally(s *Survey) string {
+	if len(s.Findings) == 0 {
+		return "no limit was applied"
+	}
+	return resultCounts(s.Findings)
+}
+
+// Exceeding are the governing findings over a limit, the highest share first.
+func Exceeding(s *Survey) []Finding { return withResult(governing(s.Findings), limits.Exceeds) }
