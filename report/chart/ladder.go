@@ -1,0 +1,64 @@
+package chart
+
+import (
+	"math"
+
+	"gonum.org/v1/plot/vg"
+	"gonum.org/v1/plot/vg/draw"
+
+	"wavetally/report"
+)
+
+// A Rung is one line of a ladder: how much of its limit something takes.
+type Rung struct {
+	Name   string
+	Share  float64 // per cent of the limit
+	Result string  // decides the symbol
+}
+
+const rungHeight = 13
+
+// LadderHeight is the height of a ladder, in points.
+func LadderHeight(rungs int) vg.Length { return vg.Length(rungs)*rungHeight + 18 }
+
+// Ladder draws shares of limits on one scale, the limit itself a line across.
+func Ladder(c draw.Canvas, rungs []Rung) {
+	high := 120.0
+	for _, r := range rungs {
+		high = math.Max(high, 1.12*r.Share)
+	}
+	named := vg.Length(0)
+	for _, r := range rungs {
+		named = max(named, widthOf(r.Name, labelSize))
+	}
+	named = min(named, 0.55*(c.Max.X-c.Min.X))
+	x := span{high: high, from: c.Min.X + named + 8, to: c.Max.X - 4}
+	top := c.Max.Y - 10
+	foot := top - vg.Length(len(rungs))*rungHeight
+	for _, t := range niceTicks(0, high, 8) {
+		c.StrokeLine2(solid(grid, 0.5), x.at(t.at), foot, x.at(t.at), top)
+		c.FillText(letters(tickSize, false, Faint, draw.XCenter, draw.YTop), vg.Point{X: x.at(t.at), Y: foot - 1}, t.label+" %")
+	}
+	c.StrokeLine2(dashed(Limit, 1.1), x.at(100), foot, x.at(100), top+1)
+	c.FillText(letters(tickSize, true, Alarm, draw.XCenter, -0.38), vg.Point{X: x.at(100), Y: top + 5}, "limit")
+	for i, r := range rungs {
+		y := top - (vg.Length(i)+0.5)*rungHeight
+		c.FillText(letters(labelSize, false, Ink, draw.XLeft, -0.38), vg.Point{X: c.Min.X, Y: y}, shortened(r.Name, named))
+		rung(c, x, y, r)
+	}
+}
+
+// rung draws a stem to the share, the result's symbol at its end, and the number.
+func rung(c draw.Canvas, x span, y vg.Length, r Rung) {
+	const size = 7
+	end := x.at(r.Share)
+	c.StrokeLine2(solid(gray(0x8c), 1.6), x.from, y, max(x.from, end-size/2), y)
+	box := vg.Rectangle{Min: vg.Point{X: end - size/2, Y: y - size/2}, Max: vg.Point{X: end + size/2, Y: y + size/2}}
+	Symbol(draw.Canvas{Canvas: c.Canvas, Rectangle: box}, r.Result)
+	label := report.Sig(r.Share) + " %"
+	style, at := letters(tickSize, true, Ink, draw.XLeft, -0.38), end+size/2+3
+	if at+widthOf(label, tickSize)+3 > x.to {
+		style.XAlign, at = draw.XRight, end-size/2-3
+	}
+	c.FillText(style, vg.Point{X: at, Y: y}, label)
+}

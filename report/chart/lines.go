@@ -1,0 +1,337 @@
+package chart
+
+import (
+	"cmp"
+	"image/color"
+	"math"
+	"slices"
+	"time"
+
+	"gonum.org/v1/plot/vg"
+	"gonum.org/v1/plot/vg/draw"
+
+	"wavetally/report"
+)
+
+// A row is one panel of a chart of lines.
+type row struct {
+	series []report.Series
+	main   bool // carries the limits and the chart's own y axis
+}
+
+// rowsOf sorts a chart's lines into panels: what was measured in one, and in lower ones, each to a scale of its own,
+// what would vanish there or has another unit: a waveform's residual, the load under a trend.
+func rowsOf(ch report.Chart) []row {
+	rows := []row{{main: true}, {}, {}}
+	for _, s := range ch.Series {
+		i := 0
+		switch s.Use {
+		case report.Residual:
+			i = 1
+		case report.Other:
+			i = 2
+		}
+		rows[i].series = append(rows[i].series, s)
+	}
+	rows = slices.DeleteFunc(rows, func(r row) bool { return len(r.series) == 0 })
+	if len(rows) > 0 {
+		rows[0].main = true // a chart of companions only is about them
+	}
+	return rows
+}
+
+// drawLines draws lines over time.
+func drawLines(c draw.Canvas, ch report.Chart, at Place) {
+	rows := rowsOf(ch)
+	weights := make([]float64, len(rows))
+	for i, r := range rows {
+		weights[i] = 1
+		if !r.main {
+			weights[i] = 0.45
+		}
+	}
+	top := drawKey(c, axisName(ch.Y), lineKeys(ch))
+	below := vg.Length(belowOneRow)
+	if ch.X.Clock {
+		below = 30
+	}
+	for i, r := range stack(c, top, labelRoom(ch), below, weights) {
+		p := newPanel(c, r, ch.X, rowAxis(ch, rows[i]))
+		p.axisY(p.yTicks())
+		p.shades(ch.Shades)
+		xticks := p.timeTicks(ch, at)
+		p.axisX(xticks, i == len(rows)-1)
+		p.lines(ch, rows[i])
+		if !rows[i].main {
+			p.FillText(letters(tickSize, false, Faint, draw.XLeft, draw.YTop), vg.Point{X: c.Min.X, Y: p.Max.Y + 3}, rows[i].series[0].Unit)
+		}
+		if i == len(rows)-1 {
+			p.nameX(timeAxis(ch.X, at), below-8.5)
+		}
+	}
+}
+
+// timeAxis is a time axis as it is labelled: by the clock and its zone, or from the recording's start.
+func timeAxis(a report.Axis, at Place) report.Axis {
+	switch {
+	case !a.Clock:
+		return a
+	case at.Start.IsZero():
+		return report.Axis{Label: "time from the recording's start"}
+	case at.Zone == nil || at.Zone == time.UTC:
+		return report.Axis{Label: "time, UTC"}
+	}
+	return report.Axis{Label: "time in " + at.Zone.String()}
+}
+
+func (p panel) timeTicks(ch report.Chart, at Place) []tick {
+	room := max(2, int((p.x.to-p.x.from)/42))
+	if ch.X.Clock {
+		return clockTicks(p.x.low, p.x.high, at, room)
+	}
+	return niceTicks(p.x.low, p.x.high, room)
+}
+
+// rowAxis is the y axis of a row: the chart's own, or one that holds what a lower panel shows.
+func rowAxis(ch report.Chart, r row) report.Axis {
+	if r.main {
+		return ch.Y
+	}
+	var a report.Axis
+	for _, s := range r.series {
+		for _, v := range s.Y {
+			if !math.IsNaN(v) {
+				a.Low, a.High = math.Min(a.Low, 1.1*v), math.Max(a.High, 1.1*v)
+			}
+		}
+	}
+	return a
+}
+
+// labelRoom is how much space the names at the lines' right ends take.
+func labelRoom(ch report.Chart) vg.Length {
+	room := vg.Length(0)
+	if len(ch.Limits) > 0 {
+		room = widthOf("limit", tickSize)
+	}
+	for _, s := range ch.Series {
+		room = max(room, widthOf(endName(s), tickSize))
+	}
+	return min(room+22, 110)
+}
+
+func endName(s report.Series) string {
+	switch s.Use {
+	case report.Rebuilt, report.Residual, report.Highest:
+		return ""
+	}
+	if s.Role != "" {
+		return string(s.Role)
+	}
+	return s.Name
+}
+
+func lineKeys(ch report.Chart) []keyItem {
+	var items []keyItem
+	for _, use := range []string{report.Measured, report.Rebuilt, report.Residual} {
+		if len(rowsOf(ch)) < 2 {
+			break
+		}
+		if i := slices.IndexFunc(ch.Series, func(s report.Series) bool { return s.Use == use }); i >= 0 {
+			items = append(items, lineKey(useNames[use], lineStyle(report.Series{Use: use})))
+		}
+	}
+	for _, l := range ch.Limits {
+		items = append(items, lineKey(l.Name, dashed(Limit, 1)))
+	}
+	var whys []string
+	for _, s := range ch.Shades {
+		if !slices.Contains(whys, s.Why) {
+			whys = append(whys, s.Why)
+		}
+	}
+	for i, why := range whys {
+		if i == 0 {
+			why = "left out: " + why
+		}
+		items = append(items, boxKey(why, shadeBox))
+	}
+	return items
+}
+
+var useNames = map[string]string{report.Measured: "as recorded", report.Rebuilt: "rebuilt from the lines above noise",
+	report.Residual: "difference"}
+
+func lineStyle(s report.Series) draw.LineStyle {
+	l := lookOf(s.Role)
+	switch s.Use {
+	case report.Rebuilt:
+		return draw.LineStyle{Color: Ink, Width: 0.5, Dashes: []vg.Length{2.4, 1.6}}
+	case report.Residual:
+		return solid(gray(0x8c), 0.5)
+	case report.Highest:
+		return draw.LineStyle{Color: l.ink, Width: 0.4, Dashes: l.dashes}
+	case report.Measured:
+		return l.line(0.9)
+	}
+	return l.line(0.7)
+}
+
+// shades marks stretches that were left out.
+func (p panel) shades(shades []report.Shade) {
+	for _, s := range shades {
+		from, to := p.x.at(p.x.clamp(s.From)), p.x.at(p.x.clamp(s.To))
+		if to-from < 0.8 { // a 10 min interval of a week would vanish
+			from, to = (from+to)/2-0.4, (from+to)/2+0.4
+		}
+		shadeBox(p.Canvas, vg.Rectangle{Min: vg.Point{X: from, Y: p.Min.Y}, Max: vg.Point{X: to, Y: p.Max.Y}})
+	}
+}
+
+func shadeBox(c draw.Canvas, r vg.Rectangle) {
+	c.SetColor(shade)
+	c.Fill(rectangle(r))
+}
+
+func (p panel) lines(ch report.Chart, r row) {
+	p.Push()
+	for _, s := range r.series {
+		p.line(s)
+	}
+	var limits []report.LimitLine
+	if r.main {
+		limits = ch.Limits
+	}
+	for _, l := range limits {
+		p.limitLine(l)
+	}
+	p.endNames(r.series, limits)
+	p.Pop()
+}
+
+// line draws a series, broken where it has no value.
+func (p panel) line(s report.Series) {
+	var run []vg.Point
+	style := lineStyle(s)
+	end := func() {
+		if len(run) == 1 { // a lone value would leave no trace
+			run = append(run, vg.Point{X: run[0].X + 0.6, Y: run[0].Y})
+		}
+		if len(run) > 1 {
+			p.StrokeLines(style, thinned(run))
+		}
+		run = run[:0]
+	}
+	for i := range s.X {
+		if math.IsNaN(s.X[i]) || math.IsNaN(s.Y[i]) {
+			end()
+			continue
+		}
+		run = append(run, p.point(p.x.clamp(s.X[i]), p.y.clamp(s.Y[i])))
+	}
+	end()
+}
+
+// thinned keeps of the points that fall within a fifth of a point on paper the first, the lowest, the highest and the
+// last: no printer shows a difference, and the file stays small.
+func thinned(pts []vg.Point) []vg.Point {
+	const bin = 0.2
+	var out []vg.Point
+	for i := 0; i < len(pts); {
+		j := i
+		low, high := i, i
+		for j < len(pts) && pts[j].X < pts[i].X+bin {
+			if pts[j].Y < pts[low].Y {
+				low = j
+			}
+			if pts[j].Y > pts[high].Y {
+				high = j
+			}
+			j++
+		}
+		keep := []int{i, min(low, high), max(low, high), j - 1}
+		for k, index := range keep {
+			if k == 0 || index != keep[k-1] {
+				out = append(out, pts[index])
+			}
+		}
+		i = j
+	}
+	return out
+}
+
+func (p panel) limitLine(l report.LimitLine) {
+	if l.X == nil {
+		if len(l.Y) == 1 && l.Y[0] >= p.y.low && l.Y[0] <= p.y.high {
+			y := p.y.at(l.Y[0])
+			p.StrokeLine2(dashed(Limit, 1), p.Min.X, y, p.Max.X, y)
+		}
+		return
+	}
+	var pts []vg.Point
+	for i := range l.X {
+		pts = append(pts, p.point(p.x.clamp(l.X[i]), p.y.clamp(l.Y[i])))
+	}
+	p.StrokeLines(dashed(Limit, 1), pts)
+}
+
+// An ending is a line's name at its right end.
+type ending struct {
+	y    vg.Length
+	name string
+	ink  color.Color
+	line draw.LineStyle
+}
+
+// endNames writes the lines' names at their right ends, with a piece of the line, moved apart where they would touch.
+func (p panel) endNames(series []report.Series, limits []report.LimitLine) {
+	var ends []ending
+	for _, s := range series {
+		if y, ok := lastValue(s.Y); ok && endName(s) != "" {
+			ends = append(ends, ending{p.y.at(p.y.clamp(y)), endName(s), Ink, lineStyle(s)})
+		}
+	}
+	for _, l := range limits {
+		y, ok := lastValue(l.Y)
+		if same := func(e ending) bool { return e.name == "limit" && e.y == p.y.at(p.y.clamp(y)) }; ok && !slices.ContainsFunc(ends, same) {
+			ends = append(ends, ending{p.y.at(p.y.clamp(y)), "limit", Alarm, dashed(Limit, 1)})
+		}
+	}
+	slices.SortStableFunc(ends, func(a, b ending) int { return cmp.Compare(a.y, b.y) })
+	ys := make([]vg.Length, len(ends))
+	for i := range ends {
+		ys[i] = ends[i].y
+	}
+	spread(ys, 7.6, p.Min.Y+3, p.Max.Y-1)
+	for i, e := range ends {
+		x := p.Max.X + 3
+		p.StrokeLine2(e.line, x, ys[i], x+13, ys[i])
+		p.FillText(letters(tickSize, true, e.ink, draw.XLeft, -0.38), vg.Point{X: x + 16, Y: ys[i]}, shortened(e.name, 92))
+	}
+}
+
+func lastValue(v []float64) (float64, bool) {
+	for i := len(v) - 1; i >= 0; i-- {
+		if !math.IsNaN(v[i]) {
+			return v[i], true
+		}
+	}
+	return 0, false
+}
+
+// spread moves sorted positions apart to at least a distance, within low and high as far as there is room.
+func spread(ys []vg.Length, apart, low, high vg.Length) {
+	for i := range ys {
+		ys[i] = max(ys[i], low)
+		if i > 0 {
+			ys[i] = max(ys[i], ys[i-1]+apart)
+		}
+	}
+	for i := len(ys) - 1; i >= 0; i-- {
+		limit := high
+		if i < len(ys)-1 {
+			limit = ys[i+1] - apart
+		}
+		ys[i] = min(ys[i], limit)
+	}
+}
