@@ -130,7 +130,7 @@ func (r *run) hand(c *chunk, n int) bool {
 		return r.emit(c, 0, n, r.at(0))
 	}
 	if k := r.source.layout.Clock; k.Kind != table.IndexClock {
-		r.tracker.Allow(resolution(k, c.digits))
+		r.tracker.Allow(resolution(k, c.decimals()))
 	}
 	from, at := 0, 0.0
 	for i := range n {

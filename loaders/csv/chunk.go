@@ -16,7 +16,8 @@ type chunk struct {
 	rows    int
 	columns [][]float64 // [channel][row]
 	times   []float64   // [row], s since the plan's origin; NaN where there is none
-	digits  int         // most decimals of a second that a stamp has
+	digits  int         // decimals that stamps have, where they have the fewest
+	most    int         // decimals so far in this group of rows
 	lines   int
 	tail    int // rows at the end that are of another table's shape
 	odd     oddities
@@ -95,7 +96,7 @@ func (o *oddities) merge(p *oddities, lines int) {
 
 // reset makes c ready to be filled again.
 func (c *chunk) reset() {
-	c.rows, c.digits, c.lines, c.tail, c.open, c.err = 0, 0, 0, 0, false, nil
+	c.rows, c.digits, c.most, c.lines, c.tail, c.open, c.err = 0, math.MaxInt, 0, 0, 0, false, nil
 	c.odd.reset()
 }
 
@@ -233,7 +234,7 @@ func (c *chunk) finish(p *plan, line []byte, width int, found tries, clock insta
 		if line[0] == 0 {
 			c.odd.nul.add(c.lines, nil)
 		}
-	case found.good == 0 || found.good*2 < min(width, p.channels):
+	case found.good == 0 || p.hasTime && !clock.set || !p.hasTime && found.text > 0:
 		c.odd.text.add(c.lines, line)
 	default:
 		c.odd.ragged.add(c.lines, line)
@@ -258,7 +259,7 @@ func (c *chunk) keep(p *plan, line []byte, clock instant) {
 	if p.hasTime {
 		if clock.set {
 			t = clock.seconds(p)
-			c.digits = max(c.digits, clock.digits)
+			c.resolve(clock.digits)
 		} else {
 			c.odd.badTime.add(c.lines, line)
 		}
@@ -266,6 +267,23 @@ func (c *chunk) keep(p *plan, line []byte, clock instant) {
 	c.times[c.rows] = t
 	c.rows++
 	c.tail = 0
+}
+
+// resolve finds how finely stamps are written. Trailing zeros may have been left out of some, so the longest of a group
+// of rows counts, and of the groups the shortest, since six digits resolve less the longer the time.
+func (c *chunk) resolve(digits int) {
+	const group = 64
+	if c.most = max(c.most, digits); c.rows%group == group-1 {
+		c.digits, c.most = min(c.digits, c.most), 0
+	}
+}
+
+// decimals is the result of resolve.
+func (c *chunk) decimals() int {
+	if c.rows < 64 {
+		return c.most
+	}
+	return c.digits
 }
 
 // blank adds a row without values, so that those after it keep their place.

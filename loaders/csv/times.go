@@ -1,8 +1,6 @@
 package csv
 
 import (
-	"math"
-
 	"wavetally/loaders/table"
 	"wavetally/loaders/timebase"
 )
@@ -39,7 +37,6 @@ func newTimes(p *plan) *times {
 // read takes in the chunk's rows.
 func (t *times) read() {
 	b := t.chunk.text
-	step := 1.0
 	for i := 0; i < len(b); {
 		if b[i] == '\n' || b[i] == '\r' {
 			i++
@@ -54,25 +51,15 @@ func (t *times) read() {
 			t.first, t.origin = clock, clock.whole
 			t.plan.origin = clock.whole
 		}
-		step = t.resolution(clock.digits, step)
-		t.add(timebase.Point{Row: t.row, T: clock.seconds(t.plan), Step: step})
+		t.add(timebase.Point{Row: t.row, T: clock.seconds(t.plan), Step: resolution(t.plan.clock, clock.digits)})
 		t.row++
 	}
-}
-
-// resolution is the size of the last decimal, in s. Trailing zeros may have been left out of some stamps, so the finest
-// of a chunk's stamps counts.
-func (t *times) resolution(digits int, finest float64) float64 {
-	unit := 1.0
-	if t.plan.clock.Kind == table.NumberClock {
-		unit = t.plan.clock.Seconds
-	}
-	return min(finest, unit*math.Pow10(-digits))
 }
 
 func (t *times) add(p timebase.Point) {
 	if t.row == 0 {
 		t.last = p
+		t.points = append(t.points, p)
 		return
 	}
 	if p.T != t.last.T && p.Row >= t.next {

@@ -3,6 +3,7 @@ package table
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 )
 
@@ -66,6 +67,7 @@ func (g *guesser) findClock(l *Layout) {
 // numberColumns finds the first column of numbers that tells the time and the first that numbers the samples, or -1.
 func (g *guesser) numberColumns(l *Layout) (number, index int) {
 	number, index = -1, -1
+	leading := slices.Index(g.kinds, Number)
 	for c, col := range l.Columns {
 		if g.kinds[c] != Number || !increasing(g.values[c]) {
 			continue
@@ -78,16 +80,15 @@ func (g *guesser) numberColumns(l *Layout) (number, index int) {
 			if number < 0 {
 				number = c
 			}
-		case indexWords[w] && (w != "" || c == 0) && whole(g.values[c]):
+		case indexWords[w] && (w != "" || c == leading) && whole(g.values[c]):
 			if index < 0 {
 				index = c
 			}
-		case c == 0 && evenSteps(g.values[c]) && len(g.kinds) > 1:
-			if whole(g.values[c]) {
-				index = max(index, c)
-			} else if number < 0 {
-				number = c
-			}
+		case c != leading || len(g.kinds) == 1 || !evenSteps(g.values[c]):
+		case whole(g.values[c]):
+			index = max(index, c)
+		case number < 0:
+			number = c
 		}
 	}
 	return number, index

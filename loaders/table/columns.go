@@ -156,7 +156,9 @@ func (g *guesser) headings() []Column {
 			continue
 		}
 		looked++
-		row := g.headingRow(i)
+		text, used := g.quotedLines(i)
+		i -= used
+		row := g.headingRow(text)
 		if row == nil {
 			if names != nil {
 				break
@@ -193,9 +195,22 @@ func (g *guesser) headings() []Column {
 	return columns
 }
 
+// quotedLines returns line i, put together with those before it when a quoted heading has line breaks in it, and the
+// number of those.
+func (g *guesser) quotedLines(i int) (text []byte, used int) {
+	text = g.lines[i].text
+	for bytes.Count(text, []byte{'"'})%2 == 1 {
+		if used++; used > 5 || used > i {
+			return g.lines[i].text, 0
+		}
+		text = slices.Concat(g.lines[i-used].text, []byte{' '}, text)
+	}
+	return text, used
+}
+
 // headingRow returns the cells of a line above the first row as text, nil when it has not about the table's width.
-func (g *guesser) headingRow(i int) []string {
-	row := cells(nil, g.lines[i].text, g.delimiter)
+func (g *guesser) headingRow(text []byte) []string {
+	row := cells(nil, text, g.delimiter)
 	for len(row) > g.width && len(Trim(row[len(row)-1])) == 0 {
 		row = row[:len(row)-1]
 	}
@@ -236,6 +251,9 @@ func (g *guesser) isNameRow(row []string) bool {
 		case kind != Empty:
 			number++
 		}
+	}
+	if isTimeWord(row[0]) && len(row) > 2 { // "time,1,2,3" names channels by their numbers
+		return true
 	}
 	return text > 0 && text > number && (len(row) > 2 || number == 0)
 }

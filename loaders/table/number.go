@@ -142,7 +142,7 @@ func Cell(cell []byte, mark byte, shift int) (float64, Kind) {
 	if len(cell) == 0 {
 		return math.NaN(), Empty
 	}
-	if missing[string(bytes.ToLower(cell))] || cell[0] == '#' {
+	if missing[string(bytes.ToLower(cell))] || spreadsheetError(cell) {
 		return math.NaN(), Missing
 	}
 	var room [64]byte
@@ -170,6 +170,15 @@ func Cell(cell []byte, mark byte, shift int) (float64, Kind) {
 		return math.NaN(), Missing // digits alone can fail only by being beyond a float64's range
 	}
 	return value * math.Pow10(shift) * factor, Number
+}
+
+// spreadsheetError recognises #DIV/0!, #VALUE!, #NAME?, #N/A and the like, and ##### for a cell that was too narrow.
+func spreadsheetError(cell []byte) bool {
+	if cell[0] != '#' || len(cell) < 3 {
+		return false
+	}
+	last := cell[len(cell)-1]
+	return last == '!' || last == '?' || last == '#' || bytes.EqualFold(cell, []byte("#N/A")) || bytes.EqualFold(cell, []byte("#NV"))
 }
 
 // Trim takes blanks, no-break spaces, NUL bytes and one pair of quotes off both ends.
@@ -315,8 +324,8 @@ func ungroup(whole []byte, mark byte) ([][]byte, bool) {
 			n++
 		}
 		groups = append(groups, whole[:n])
-		if len(groups) > 1 && n != 3 || len(groups) > 1 && len(groups[0]) > 3 {
-			return nil, false
+		if len(groups) > 1 && (n != 3 || len(groups[0]) > 3 || len(groups[0]) > 0 && groups[0][0] == '0') {
+			return nil, false // 0,123 is no number of thousands
 		}
 		if n == len(whole) {
 			return groups, len(groups) == 1 || len(groups[0]) > 0

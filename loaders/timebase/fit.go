@@ -25,7 +25,6 @@ type Fit struct {
 	Interval float64 // s between rows
 	Low, Top float64 // s, the least and largest interval that the stamps allow
 	Jitter   float64 // s, peak to peak, by which stamps stray from even steps beyond their resolution; 0: not at all
-	Step     float64 // s, the coarsest resolution met
 	Points   int     // that the fit rests on
 }
 
@@ -125,11 +124,13 @@ func slope(points []Point) float64 {
 func bound(points []Point, start, origin float64) Fit {
 	points = few(points, 3000)
 	f := Fit{Points: len(points)}
-	for _, p := range points {
-		f.Step = max(f.Step, p.Step)
+	steps := make([]float64, len(points))
+	for i, p := range points {
+		steps[i] = p.Step
 	}
+	slices.Sort(steps)
 	span := float64(points[len(points)-1].Row - points[0].Row)
-	f.Interval = minimum(func(b float64) float64 { return excess(points, b, 0, origin) }, start, max(0.01*start, 4*f.Step/span))
+	f.Interval = minimum(func(b float64) float64 { return excess(points, b, 0, origin) }, start, max(0.01*start, 4*steps[len(steps)/2]/span))
 	const single = 1.0 / (1 << 23) // spacing of single-precision numbers near 1
 	for _, precision := range []float64{0, single} {
 		g := func(b float64) float64 { return excess(points, b, precision, origin) }

@@ -31,10 +31,10 @@ type Tracker struct {
 
 // NewTracker follows stamps at a rate in samples per second. wraps is 86400 for stamps without a date, else 0.
 func NewTracker(f Fit, rate, wraps float64) *Tracker {
-	return &Tracker{rate: rate, tolerance: 0.5/rate + f.Step + 1.5*f.Jitter, wraps: wraps}
+	return &Tracker{rate: rate, tolerance: 0.5/rate + 1.5*f.Jitter, wraps: wraps}
 }
 
-// Allow widens the tolerance to stamps written with a coarser resolution, in s, than those that the rate was found from.
+// Allow widens the tolerance to the resolution, in s, that the next stamps are written with.
 func (k *Tracker) Allow(step float64) {
 	k.tolerance = max(k.tolerance, 0.5/k.rate+step)
 }
@@ -105,7 +105,7 @@ func (k *Tracker) Rhythm(stamps []float64) bool {
 // Restart changes the rate from the segment that has just begun on.
 func (k *Tracker) Restart(f Fit, rate float64) {
 	k.rate = rate
-	k.tolerance = 0.5/rate + f.Step + 1.5*f.Jitter
+	k.tolerance = 0.5/rate + 1.5*f.Jitter
 	k.drift = 0
 }
 
