@@ -23,6 +23,7 @@ type events struct {
 	channels []int     // measured channels watched
 	nominal  []float64 // of each
 	last     []float64 // mean square of the half cycle before; NaN after a break
+	seen     []bool    // the channel was once within the dip and swell thresholds
 	open     [3]*VoltageEvent
 	done     []VoltageEvent
 }
@@ -35,6 +36,7 @@ func newEvents(channels []channel) *events {
 			e.roles = append(e.roles, c.role)
 			e.nominal = append(e.nominal, c.nominal)
 			e.last = append(e.last, math.NaN())
+			e.seen = append(e.seen, false)
 		}
 	}
 	return e
@@ -73,10 +75,15 @@ func (e *events) window(c cut, cycles int, r *windowResult) (now, before Flags) 
 }
 
 // step takes one value a channel, as shares of nominal, that ends at time at.
+//
+// A channel that was never near its nominal value has no events: it is dead, or wrongly scaled, which is another doubt.
 func (e *events) step(shares []float64, at float64) Flags {
 	lowest, highest := math.Inf(1), math.Inf(-1)
-	for _, s := range shares {
-		if !math.IsNaN(s) {
+	for i, s := range shares {
+		e.seen[i] = e.seen[i] || s >= dipBelow && s <= swellAbove
+		if !e.seen[i] {
+			shares[i] = math.NaN()
+		} else if !math.IsNaN(s) {
 			lowest, highest = min(lowest, s), max(highest, s)
 		}
 	}
@@ -115,7 +122,7 @@ func (e *events) turn(i int, kind Flags, begins, ends bool, shares []float64, at
 			worse = s*100 > ev.Share || math.IsNaN(ev.Extreme)
 		} else if kind == Interruption {
 			beyond = s < interruptedAt
-		}
+		} // a NaN share is not beyond anything
 		if !beyond {
 			continue
 		}
