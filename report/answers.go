@@ -112,18 +112,19 @@ func asFar(missed []Finding) string {
 	return ""
 }
 
-// told is one finding in words: "order 5 on V2, 3.82 % of the nominal voltage 230.9 V, between 3.76 % and 3.9 %, limit 5 % (76.4 % of it;
-// 95th percentile of 10 min values over a week)".
+// told is one finding in words: "order 5 on V2, 95th percentile 3.82 % of the nominal voltage 230.9 V, between 3.76 % and 3.9 %
+// with 95 % confidence, limit 5 %, 76.4 % of it (10 min values over a week)".
 func (s *Survey) told(f Finding) string {
-	value, limit := Apart(float64(f.Value), float64(f.Limit))
-	text := fmt.Sprintf("%s on %s, %s %s of the %s", QuantityName(f.Quantity, f.Order), f.Channel, value, f.Unit, f.Basis)
+	text := QuantityName(f.Quantity, f.Order) + " on " + f.Channel + ", "
 	if f.Indicative {
-		return text + fmt.Sprintf(", %s %% of the limit of %s %s", Sig(float64(f.Share)), limit, f.Unit)
+		value, limit := Apart(float64(f.Value), float64(f.Limit))
+		return text + fmt.Sprintf("%s %s of the %s, %s %% of the limit of %s %s", value, f.Unit, f.Basis, Sig(float64(f.Share)), limit, f.Unit)
 	}
-	if b := Bounds(f); b != "" {
-		text += ", " + b
+	text += firmness(f, " of the "+f.Basis) + ", " + Sig(float64(f.Share)) + " % of it"
+	if _, of, ok := strings.Cut(f.Statistic, " of "); ok {
+		text += " (" + of + ")"
 	}
-	return text + fmt.Sprintf(", limit %s %s (%s %% of it; %s)", limit, f.Unit, Sig(float64(f.Share)), f.Statistic)
+	return text
 }
 
 // Bounds says how firm a finding's value is: "between 3.76 % and 3.9 %"; "" when that is not known. What the bounds
@@ -136,12 +137,13 @@ func Bounds(f Finding) string {
 	return fmt.Sprintf("between %s %s and %s %s", low, f.Unit, high, f.Unit)
 }
 
-// Firmness is the whole sentence on how firm a percentile is: "95th percentile 4.8 %, between 4.5 % and 5.1 % with 95 %
-// confidence, limit 5 %".
-func Firmness(f Finding) string {
+// Firmness says how firm a finding is: "95th percentile 4.8 %, between 4.5 % and 5.1 % with 95 % confidence, limit 5 %".
+func Firmness(f Finding) string { return firmness(f, "") }
+
+func firmness(f Finding, basis string) string {
 	value, limit := Apart(float64(f.Value), float64(f.Limit))
 	name, _, _ := strings.Cut(f.Statistic, " of ")
-	text := fmt.Sprintf("%s %s %s", name, value, f.Unit)
+	text := fmt.Sprintf("%s %s %s%s", name, value, f.Unit, basis)
 	if b := Bounds(f); b != "" {
 		text += ", " + b + " with 95 % confidence"
 	}

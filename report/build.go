@@ -53,8 +53,8 @@ func Build(in Inputs) *Survey {
 	return s
 }
 
-// tidySheet gives the lists of the sheet as lists even where nothing was declared, so that readers of the JSON need
-// not tell null from empty.
+// tidySheet is the sheet as used: scales that were left out are 1, and lists are lists even where nothing was declared, so
+// that readers of the JSON need not tell null from empty.
 func tidySheet(sheet site.Sheet) site.Sheet {
 	if sheet.Guessed == nil {
 		sheet.Guessed = []string{}
@@ -65,9 +65,14 @@ func tidySheet(sheet site.Sheet) site.Sheet {
 	if sheet.Supply.CapacitorKvar == nil {
 		sheet.Supply.CapacitorKvar = []float64{}
 	}
-	if sheet.Channels == nil {
-		sheet.Channels = []site.Channel{}
+	channels := make([]site.Channel, 0, len(sheet.Channels))
+	for _, c := range sheet.Channels {
+		if c.Scale == 0 {
+			c.Scale = 1
+		}
+		channels = append(channels, c)
 	}
+	sheet.Channels = channels
 	return sheet
 }
 

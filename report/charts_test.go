@@ -2,15 +2,17 @@ package report_test
 
 import (
 	"math"
+	"sync"
 	"testing"
 
 	"wavetally/report"
 	"wavetally/report/internal/fixture"
 )
 
-func surveys() map[string]*report.Survey {
+// surveys are built once; tests that change anything build their own.
+var surveys = sync.OnceValue(func() map[string]*report.Survey {
 	return map[string]*report.Survey{"week": fixture.Week(), "short": fixture.Short(), "tiny": fixture.Tiny()}
-}
+})
 
 // Whatever the recording, a renderer may rely on this of every chart.
 func TestChartsHoldTogether(t *testing.T) {
@@ -89,7 +91,7 @@ func chart(t *testing.T, s *report.Survey, key string) report.Chart {
 
 // Bars, whiskers and limits of a judged spectrum are the numbers of the findings.
 func TestSpectrumDrawsTheFindings(t *testing.T) {
-	s := fixture.Week()
+	s := surveys()["week"]
 	c := chart(t, s, "spectrum-I-ieee-519-2022")
 	const k = 11 - 2
 	for i, role := range []string{"I1", "I2", "I3"} {
@@ -115,7 +117,7 @@ func TestSpectrumDrawsTheFindings(t *testing.T) {
 
 // A cell of the heat map over 100 % is an interval over the limit, and no invalid interval has a cell.
 func TestHeatMapAgainstIntervals(t *testing.T) {
-	s := fixture.Week()
+	s := surveys()["week"]
 	c := chart(t, s, "heat-V-en-50160")
 	fold := int(math.Round(c.Grid.DX / 600))
 	const order, limit = 15, 0.5 // EN 50160, order 15
@@ -136,7 +138,7 @@ func TestHeatMapAgainstIntervals(t *testing.T) {
 
 // What is rebuilt and what is left add up to what was recorded.
 func TestRebuiltPlusResidual(t *testing.T) {
-	c := chart(t, fixture.Week(), "rebuilt-I2")
+	c := chart(t, surveys()["week"], "rebuilt-I2")
 	for i := range c.Series[0].Y {
 		if d := c.Series[0].Y[i] - c.Series[1].Y[i] - c.Series[2].Y[i]; math.Abs(d) > 1e-9 {
 			t.Fatalf("sample %d: off by %g A", i, d)
@@ -145,7 +147,7 @@ func TestRebuiltPlusResidual(t *testing.T) {
 }
 
 func TestTrendShadesWhatDoesNotCount(t *testing.T) {
-	c := chart(t, fixture.Week(), "trend-thd-V")
+	c := chart(t, surveys()["week"], "trend-thd-V")
 	if len(c.Shades) != 2 || c.Shades[0].Why != "dip" || c.Shades[1].Why != "missing samples" || c.Shades[1].To-c.Shades[1].From != 2400 {
 		t.Errorf("shades %+v", c.Shades)
 	}

@@ -3,6 +3,7 @@ package report
 import (
 	"bytes"
 	"encoding/json"
+	"errors"
 	"fmt"
 	"io"
 )
@@ -24,8 +25,12 @@ func WriteJSON(w io.Writer, s *Survey) error {
 // not in the file and stays nil.
 func ReadJSON(r io.Reader) (*Survey, error) {
 	s := &Survey{}
-	if err := json.NewDecoder(r).Decode(s); err != nil {
+	dec := json.NewDecoder(r)
+	if err := dec.Decode(s); err != nil {
 		return nil, fmt.Errorf("not a survey: %w", err)
+	}
+	if _, err := dec.Token(); err != io.EOF {
+		return nil, errors.New("not a survey: something follows after the survey")
 	}
 	if s.Schema != Schema {
 		return nil, fmt.Errorf("its schema is %q, this program reads %q", s.Schema, Schema)

@@ -152,7 +152,7 @@ func uncertaintyText(s *Survey) string {
 	if len(none) > 0 {
 		text += "Not declared, so not counted: " + list(none) + ". "
 	}
-	return text + "It applies to every order alike; a sensor's error at high orders may be larger."
+	return text + "It applies to every order alike; a sensor's error may grow with the order."
 }
 
 func plantMethod(s *Survey) []MethodItem {
