@@ -94,8 +94,12 @@ func (p *plan) rowTime(b []byte, i int, clock *instant) int {
 		} else {
 			end = p.time(b, i, what, clock)
 		}
-		if b[end] == '\n' || b[end] == '\r' || column+1 >= p.needed {
+		if column+1 >= p.needed {
 			return lineEnd(b, end)
+		}
+		if b[end] == '\n' || b[end] == '\r' {
+			*clock = instant{} // too few cells for a row
+			return end
 		}
 		if i = end; p.delimiter != ' ' {
 			i++

@@ -69,14 +69,11 @@ func (g *guesser) numberColumns(l *Layout) (number, index int) {
 	number, index = -1, -1
 	leading := slices.Index(g.kinds, Number)
 	for c, col := range l.Columns {
-		if g.kinds[c] != Number || !increasing(g.values[c]) {
-			continue
-		}
 		_, ofTime := timeUnits[strings.ToLower(col.Unit)]
 		w := word(col.Name)
 		switch electric := col.Unit != "" && !ofTime; {
-		case electric:
-		case ofTime || w != "t" && isTimeWord(col.Name) && w != "x" || w == "t" && col.Name != "T":
+		case g.kinds[c] != Number || electric:
+		case ofTime || len(w) > 1 && isTimeWord(col.Name) || col.Name == "t" && !falls(g.values[c]):
 			if number < 0 {
 				number = c
 			}
@@ -236,8 +233,8 @@ func (g *guesser) retireOtherTimes(l *Layout) {
 		switch {
 		case g.kinds[c] == stampKind:
 			col.Why = "another column tells the time"
-		case !increasing(g.values[c]) || l.Clock.Column < 0:
-		case ofTime || w != "t" && w != "x" && isTimeWord(col.Name) || w == "t" && col.Name != "T":
+		case l.Clock.Column < 0:
+		case ofTime || len(w) > 1 && isTimeWord(col.Name) || col.Name == "t" && !falls(g.values[c]):
 			col.Why = "another column tells the time"
 		case indexWords[w] && whole(g.values[c]) && (w != "" || c == 0):
 			col.Why = "it numbers the samples"

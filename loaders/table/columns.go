@@ -49,13 +49,16 @@ func (g *guesser) row(i int) [][]byte {
 	return row
 }
 
+// keptRows is the number of rows that columns are classified by: enough to see a time advance.
+const keptRows = 1000
+
 // classify finds what each column mostly holds, over all rows that look like data.
 func (g *guesser) classify() {
 	counts := make([]map[Kind]int, g.width)
 	for i := range counts {
 		counts[i] = map[Kind]int{}
 	}
-	for i := range g.lines {
+	for i := 0; i < len(g.lines); i += max(1, len(g.lines)/keptRows) {
 		row := g.row(i)
 		if len(row) != g.width {
 			continue
@@ -131,7 +134,7 @@ func (g *guesser) fits(row [][]byte) bool {
 func (g *guesser) readRows() {
 	g.values = make([][]float64, g.width)
 	g.texts = make([][]string, g.width)
-	for i := g.first; i < len(g.lines); i++ {
+	for i := g.first; i < min(len(g.lines), g.first+keptRows); i++ {
 		row := g.row(i)
 		if len(row) != g.width {
 			continue
@@ -274,8 +277,9 @@ func (g *guesser) chooseValues(l *Layout) {
 	}
 }
 
-// increasing reports whether a column never falls, but for rare resets, and rises overall.
-func increasing(values []float64) bool {
+// falls reports whether a column goes down more often than the rare resets of a clock do. A coarse time may well stand
+// still over all the rows looked at.
+func falls(values []float64) bool {
 	up, down := 0, 0
 	last := math.NaN()
 	for _, v := range values {
@@ -288,7 +292,7 @@ func increasing(values []float64) bool {
 			last = v
 		}
 	}
-	return up > 0 && down*50 <= up
+	return down > 0 && down*50 > up
 }
 
 // evenSteps reports whether the steps of a column are alike, as of a time or a running number and of no waveform.

@@ -210,6 +210,9 @@ const stampKind Kind = 100
 
 // kindOf classifies a cell that Trim has been over.
 func kindOf(cell []byte, mark byte) Kind {
+	if _, next, ok := Scan(cell, 0, mark, 0); ok && next == len(cell) {
+		return Number
+	}
 	_, kind := Cell(cell, mark, 0)
 	if kind == Text || kind == Number && strings.ContainsAny(string(cell), "-./") {
 		if _, ok := ParseStamp(cell, DayFirst); ok {

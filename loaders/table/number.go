@@ -2,6 +2,7 @@ package table
 
 import (
 	"bytes"
+	"cmp"
 	"math"
 	"strconv"
 
@@ -141,6 +142,9 @@ func Cell(cell []byte, mark byte, shift int) (float64, Kind) {
 	cell = Trim(cell)
 	if len(cell) == 0 {
 		return math.NaN(), Empty
+	}
+	if v, next, ok := Scan(cell, 0, cmp.Or(mark, '.'), shift); ok && next == len(cell) && !math.IsInf(v, 0) {
+		return v, Number
 	}
 	if missing[string(bytes.ToLower(cell))] || spreadsheetError(cell) {
 		return math.NaN(), Missing

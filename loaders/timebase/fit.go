@@ -68,36 +68,42 @@ func From(points []Point, origin float64) (Fit, error) {
 	return bound(run, slope(run), origin), nil
 }
 
-// roughInterval is the median interval over pairs of rows, as far apart as their resolution needs.
+// roughInterval is the median interval over pairs of rows, as far apart as their resolution and jitter need.
 func roughInterval(points []Point) float64 {
 	for lag := 1; ; lag *= 2 {
 		slopes := make([]float64, 0, len(points))
-		spans := make([]float64, 0, len(points))
 		for i := 0; i+lag < len(points); i++ {
 			a, b := points[i], points[i+lag]
 			slopes = append(slopes, (b.T-a.T)/float64(b.Row-a.Row))
-			spans = append(spans, (b.T-a.T)/max(a.Step, b.Step, 1e-300))
 		}
 		slices.Sort(slopes)
-		slices.Sort(spans)
-		if middle := slopes[len(slopes)/2]; middle > 0 && spans[len(spans)/2] > 40 || lag*4 > len(points) {
+		n := len(slopes)
+		middle := slopes[n/2]
+		if middle > 0 && slopes[n*3/4]-slopes[n/4] < 0.03*middle || lag*4 > len(points) {
 			return middle
 		}
 	}
 }
 
-// longestRun is the longest stretch of rows whose steps are even, within the resolution and a share of slack.
+// longestRun is the longest stretch of rows whose steps are even, within the resolution, a share of slack, and twice
+// the jitter that nine steps in ten keep to.
 func longestRun(points []Point, interval, slack float64) []Point {
+	offs := make([]float64, len(points)-1)
+	for i := range offs {
+		offs[i] = math.Abs(points[i+1].T - points[i].T - interval*float64(points[i+1].Row-points[i].Row))
+	}
+	sorted := slices.Clone(offs)
+	slices.Sort(sorted)
+	jitter := 2 * sorted[len(sorted)*9/10]
 	best, start := points[:0], 0
 	for i := 1; i <= len(points); i++ {
 		if i < len(points) {
 			a, b := points[i-1], points[i]
-			expected := interval * float64(b.Row-a.Row)
-			if math.Abs(b.T-a.T-expected) <= 0.75*interval+max(a.Step, b.Step)+slack*expected {
+			if offs[i-1] <= max(0.75*interval+max(a.Step, b.Step), jitter)+slack*interval*float64(b.Row-a.Row) {
 				continue
 			}
 		}
-		if run := points[start:i]; len(best) == 0 || run[len(run)-1].T-run[0].T > best[len(best)-1].T-best[0].T {
+		if run := points[start:i]; len(best) == 0 || run[len(run)-1].Row-run[0].Row > best[len(best)-1].Row-best[0].Row {
 			best = run
 		}
 		start = i
@@ -122,7 +128,7 @@ func slope(points []Point) float64 {
 
 // bound finds the range of intervals by which one straight line passes all stamps within their resolution.
 func bound(points []Point, start, origin float64) Fit {
-	points = few(points, 3000)
+	points = few(points, 1200)
 	f := Fit{Points: len(points)}
 	steps := make([]float64, len(points))
 	for i, p := range points {
