@@ -26,7 +26,7 @@ type Finding struct {
 	Unit       string  // "%"
 	Share      float64 // 100 × Value / Limit, per cent
 	Result     string
-	Why        string // for undecided and not assessed: the reason and what would settle it
+	Why        string // for undecided and not assessed: the reason and what would settle it; else what weakens the verdict, "" for nothing
 	Basis      string // what the percentage is of: "nominal voltage 230.9 V", "demand current 410 A", "fundamental"
 	N          int    // intervals behind Value
 	Indicative bool   // Value is not the statistic the rule asks for, but the nearest the record gives
@@ -37,5 +37,7 @@ type Finding struct {
 	TableKey  string  // names the table, column and factor in the rule set: RuleSet/Table/Row/Column
 	TablePct  float64 // the table's entry before even-order and statistic factors
 	Factor    float64 // product of the factors: Limit = TablePct × Factor
+	OfOrder   float64 // the part of Factor that the order brings (even orders of IEEE 519 currents)
+	OfStat    float64 // the part of Factor that the statistic brings
 	BasisSize float64 // the number behind Basis in the channel's unit; NaN for the fundamental
 }
