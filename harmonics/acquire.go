@@ -43,7 +43,8 @@ type found struct {
 // It is clear when it has at least a thousandth of the whole power and twenty times what its surroundings have on
 // average: pure noise reaches that once in ten million looks (some thirty lines, exponentially distributed).
 func acquire(x []float64, rate, low, high float64) found {
-	n := min(len(x), int(acquireSeconds*rate))
+	x, rate = coarse(x[:min(len(x), int(acquireSeconds*rate))], rate)
+	n := len(x)
 	if n < 16 || float64(n) < 2*rate/low {
 		return found{}
 	}
@@ -95,4 +96,27 @@ func acquire(x []float64, rate, low, high float64) found {
 	standsOut := count < 4 || level*level > 20*around/float64(count)
 	f.clear = f.rms*f.rms > power/1000 && standsOut
 	return f
+}
+
+// coarseRate is enough to see a fundamental.
+const coarseRate = 1600
+
+// coarse brings x down to a rate of at least coarseRate by averaging runs of samples, twice as wide as they are apart.
+// What folds down onto the fundamental that way is a few thousandths of a high harmonic: enough to find it.
+func coarse(x []float64, rate float64) ([]float64, float64) {
+	run := int(rate / coarseRate)
+	if run < 2 || len(x) < 4*run {
+		return x, rate
+	}
+	sums := make([]float64, len(x)/run)
+	for i := range sums {
+		for _, v := range x[i*run : (i+1)*run] {
+			sums[i] += v
+		}
+	}
+	out := make([]float64, len(sums)-1)
+	for i := range out {
+		out[i] = (sums[i] + sums[i+1]) / float64(2*run)
+	}
+	return out, rate / float64(run)
 }

@@ -67,8 +67,7 @@ type worker struct {
 	plan      *dft.Plan
 	y         [][]float64
 	spectrum  []complex128
-	scratch   []float64
-	rows, out [][]float64
+	scratch   *resample.Scratch
 }
 
 // resample brings window c of batch b onto its grid of points, into w.y.
@@ -81,7 +80,7 @@ func (w *worker) resample(b *batch, c cut) {
 			w.y[i] = make([]float64, n)
 		}
 	}
-	if len(w.scratch) < b.kernel.Taps() {
+	if w.scratch == nil {
 		w.scratch = b.kernel.Scratch()
 	}
 	step := c.length / float64(n)
@@ -144,7 +143,7 @@ func (w *worker) channel(b *batch, c cut, k int, r *windowResult, first bool) {
 	}
 	x := b.data[k]
 	from, to := int(math.Ceil(c.start))-b.base, int(math.Ceil(c.start+c.length))-b.base
-	out.raw.look(x[max(from, 0):min(to, len(x))])
+	out.raw.look(x[max(from, 0):min(to, len(x))], first)
 }
 
 // halves fills in the mean square of every half cycle, and of the window.

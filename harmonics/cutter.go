@@ -108,10 +108,20 @@ func (c *cutter) take(k int, dst, src []float64, gain float64) []float64 {
 	}
 	dst = dst[:n+len(src)]
 	out := dst[n:]
+	var check float64
+	for i, v := range src {
+		v *= gain
+		out[i] = v
+		check += v - v // 0, or NaN from the first NaN or infinity on
+	}
+	if check == 0 {
+		s.held[k] = out[len(out)-1]
+		return dst
+	}
 	held := s.held[k]
 	for i, v := range src {
 		v *= gain
-		if v-v != 0 { // NaN or an infinity
+		if v-v != 0 {
 			v = held
 			c.miss(k, s.batch.base+n+i)
 		}

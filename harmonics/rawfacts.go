@@ -13,36 +13,53 @@ type rawFacts struct {
 	clipped       int // stretches with such a run; merged: those at the channel's very end of range
 }
 
-// look goes once over the samples.
-func (r *rawFacts) look(x []float64) {
+// look goes over the samples. The smallest step is looked for only if asked: it takes as long as all the rest.
+func (r *rawFacts) look(x []float64, steps bool) {
 	*r = rawFacts{n: int64(len(x)), low: math.Inf(1), high: math.Inf(-1), step: math.Inf(1)}
-	if len(x) == 0 {
-		return
-	}
-	low, high, step := x[0], x[0], math.Inf(1)
-	previous := x[0]
-	for _, v := range x[1:] {
-		if v > high {
-			high = v
-		} else if v < low {
-			low = v
+	low, high := math.Inf(1), math.Inf(-1)
+	var atLow, atHigh int64
+	for _, v := range x {
+		if v >= high {
+			if v > high {
+				high, atHigh = v, 0
+			}
+			atHigh++
 		}
-		d := math.Abs(v - previous)
-		if d < step && d > 0 {
-			step = d
+		if v <= low {
+			if v < low {
+				low, atLow = v, 0
+			}
+			atLow++
 		}
-		previous = v
 	}
-	r.low, r.high, r.step = low, high, step
-	r.ends(x)
+	r.low, r.high, r.atLow, r.atHigh = low, high, atLow, atHigh
+	if atLow >= flat || atHigh >= flat {
+		r.ends(x)
+	}
+	if steps {
+		r.step = smallestStep(x)
+	}
 }
 
-// ends counts the samples at the extremes, and their runs.
+func smallestStep(x []float64) float64 {
+	step := math.Inf(1)
+	for i := 1; i < len(x); i++ {
+		if d := math.Abs(x[i] - x[i-1]); d < step && d > 0 {
+			step = d
+		}
+	}
+	return step
+}
+
+// flat is the number of equal samples that make a flat run.
+const flat = 3
+
+// ends looks for runs of equal samples at the extremes.
 func (r *rawFacts) ends(x []float64) {
 	var run int64
 	var at float64
 	finish := func() {
-		if run >= 3 {
+		if run >= flat {
 			r.flats++
 			r.longest = max(r.longest, run)
 		}
@@ -54,11 +71,6 @@ func (r *rawFacts) ends(x []float64) {
 				finish()
 			}
 			continue
-		}
-		if v == r.low {
-			r.atLow++
-		} else {
-			r.atHigh++
 		}
 		if run > 0 && v != at {
 			finish()
