@@ -19,8 +19,12 @@ type Finding struct {
 	Order      int       // 0 for totals
 	Statistic  string    // such as "95th percentile of 10 min values over a week"
 	Value      float64   // in Unit; NaN when there is none
-	ValueLow   float64   // confidence bounds of the percentile joined with the declared measurement uncertainty, in Unit; NaN when unknown
+	ValueLow   float64   // Value less and plus what is open about it, in Unit; the verdict rests on them: see the package comment. NaN when there is no value
 	ValueHigh  float64
+	SampleLow  float64 // distribution-free 95 % confidence bounds of the percentile, in Unit: how firm it is; NaN when unknown
+	SampleHigh float64
+	OverPct    float64 // share of the intervals behind Value that are above the limit, per cent; NaN when unknown
+	From, To   float64 // s from the start of the recording: the week or day that governs, else all of it
 	Level      float64 // the same value in the channel's unit (V or A); NaN when there is none
 	Limit      float64 // in Unit; NaN when the rule set could not be applied
 	Unit       string  // "%"

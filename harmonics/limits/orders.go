@@ -68,3 +68,5 @@ func parseOrders(text string) (Orders, error) {
 	}
 	return o, nil
 }
+
+func (o Orders) String() string { return o.Text }

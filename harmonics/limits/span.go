@@ -99,3 +99,5 @@ func spanEnd(text string, mark byte) (value float64, out bool, err error) {
 	}
 	return value * factor, out, nil
 }
+
+func (s Span) String() string { return s.Text }
