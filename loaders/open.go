@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"io/fs"
+	"iter"
 	"os"
 	"path/filepath"
 	"strings"
@@ -31,43 +32,194 @@ var formats = []format{
 
 // Open opens all paths together as one recording. Its errors are of three kinds, told apart with errors.As:
 // [*wave.NotThisFormatError] when no format fits, [*wave.ParseError] when a file breaks its format, and
-// [*wave.UnsupportedError] when it uses a part of its format that is not read. An error of the file system is passed
-// on as it is.
+// [*wave.UnsupportedError] when it uses a part of its format that is not read. Any other is of the file system, or
+// says that the files do not go together.
 func Open(paths []string, opt Options) (wave.Source, error) {
 	if len(paths) == 0 {
 		return nil, errors.New("no file was named; name one or more recordings, a folder, or a pattern such as *.csv")
 	}
-	if len(paths) > 1 {
-		return nil, fmt.Errorf("%d files were named; name one", len(paths))
+	var items []item
+	for _, path := range paths {
+		found, err := itemsIn(path, opt)
+		if err != nil {
+			return nil, err
+		}
+		items = append(items, found...)
 	}
-	return openOne(paths[0], opt)
+	items = withoutCompanions(items)
+	var parts []wave.Source
+	for _, it := range items {
+		src, err := it.open()
+		if err != nil {
+			return nil, err
+		}
+		parts = append(parts, src)
+	}
+	if len(parts) == 1 {
+		return parts[0], nil
+	}
+	return together(parts)
 }
 
-// openOne opens one file with the first format that knows it.
-func openOne(path string, opt Options) (wave.Source, error) {
-	if err := readable(path, opt); err != nil {
+// An item is one file to be opened, on disk or in an archive.
+type item struct {
+	path string // where opt.FS, or the disk, has it
+	opt  Options
+	disk string // the file on disk
+	name string // for messages: the base name, for a file in a zip behind the zip's
+}
+
+// itemsIn lists what a path on disk holds: itself, what it unpacks to, or the recordings in it.
+func itemsIn(path string, opt Options) ([]item, error) {
+	if err := readable(path); err != nil {
 		return nil, err
 	}
+	name := filepath.Base(path)
+	switch packingOf(path) {
+	case gzipFile:
+		bare, ok := cutSuffixFold(path, ".gz")
+		if !ok {
+			return nil, &wave.UnsupportedError{File: name, Msg: "it is packed with gzip but its name does not end in .gz; rename it"}
+		}
+		opt.FS = gzipFS{}
+		return []item{{path: bare, opt: opt, disk: path, name: name}}, nil
+	case zipFile:
+		inside := zipFS{path}
+		members, err := inside.members()
+		if err != nil {
+			return nil, err
+		}
+		opt.FS = inside
+		var items []item
+		for _, m := range members {
+			items = append(items, item{path: m, opt: opt, disk: path, name: name + "/" + m})
+		}
+		return items, nil
+	}
+	return []item{{path: path, opt: opt, disk: path, name: name}}, nil
+}
+
+func cutSuffixFold(s, suffix string) (string, bool) {
+	if n := len(s) - len(suffix); n > 0 && strings.EqualFold(s[n:], suffix) {
+		return s[:n], true
+	}
+	return s, false
+}
+
+// withoutCompanions leaves out the .dat files whose .cfg is among the items, and files named twice.
+func withoutCompanions(items []item) []item {
+	stem := func(it item) (string, string) {
+		ext := filepath.Ext(it.path)
+		return it.disk[:len(it.disk)-len(filepath.Ext(it.disk))] + "\x00" + strings.ToLower(strings.TrimSuffix(it.path, ext)), strings.ToLower(ext)
+	}
+	configured, seen := map[string]bool{}, map[string]bool{}
+	for _, it := range items {
+		if s, ext := stem(it); ext == ".cfg" {
+			configured[s] = true
+		}
+	}
+	kept := items[:0]
+	for _, it := range items {
+		s, ext := stem(it)
+		if key := it.disk + "\x00" + it.path; ext == ".dat" && configured[s] || seen[key] {
+			continue
+		} else {
+			seen[key] = true
+		}
+		kept = append(kept, it)
+	}
+	return kept
+}
+
+// open opens an item with the first format that knows it.
+func (it item) open() (wave.Source, error) {
 	var tried []string
 	for _, f := range formats {
-		src, err := f.open(path, opt)
+		src, err := f.open(it.path, it.opt)
 		var other *wave.NotThisFormatError
-		if !errors.As(err, &other) {
-			return src, err
+		switch {
+		case errors.As(err, &other):
+			tried = append(tried, f.name+": "+other.Msg)
+		case err != nil:
+			return nil, it.named(err)
+		case it.opt.FS != nil:
+			return packed{src, it}, nil
+		default:
+			return src, nil
 		}
-		tried = append(tried, f.name+": "+other.Msg)
 	}
-	return nil, &wave.NotThisFormatError{File: filepath.Base(path), Format: "a recording that can be read",
+	return nil, &wave.NotThisFormatError{File: it.name, Format: "a recording that can be read",
 		Msg: strings.Join(tried, "; ") + "; export the waveforms as COMTRADE, WAV, CSV or XLSX"}
 }
 
+// named puts the archive's name before that of the file in it.
+func (it item) named(err error) error {
+	if it.opt.FS == nil {
+		return err
+	}
+	var parse *wave.ParseError
+	var unsupported *wave.UnsupportedError
+	switch {
+	case errors.As(err, &parse):
+		parse.File = it.name
+	case errors.As(err, &unsupported):
+		unsupported.File = it.name
+	default:
+		return fmt.Errorf("%s: %w", it.name, err)
+	}
+	return err
+}
+
+// packed is a recording in an archive.
+type packed struct {
+	wave.Source
+	it item
+}
+
+// Header names the archive as the file, since that is what there is on disk.
+func (p packed) Header() wave.Header {
+	h := p.Source.Header()
+	files := make([]wave.File, len(h.Files))
+	for i, f := range h.Files {
+		files[i] = p.it.onDisk(f)
+	}
+	h.Files = files
+	return h
+}
+
+// onDisk is the file on disk that f was unpacked from.
+func (it item) onDisk(f wave.File) wave.File {
+	if _, zipped := it.opt.FS.(zipFS); zipped {
+		f.Name, f.Path = filepath.Base(it.disk)+"/"+f.Name, it.disk
+		return f
+	}
+	if _, err := os.Stat(f.Path + ".gz"); err == nil {
+		f.Name, f.Path = f.Name+".gz", f.Path+".gz"
+	}
+	return f
+}
+
+// Blocks names the archive in errors.
+func (p packed) Blocks() iter.Seq2[wave.Block, error] {
+	return func(yield func(wave.Block, error) bool) {
+		for b, err := range p.Source.Blocks() {
+			if err != nil {
+				err = p.it.named(err)
+			}
+			if !yield(b, err) {
+				return
+			}
+		}
+	}
+}
+
 // readable says in plain words why a path cannot be opened.
-func readable(path string, opt Options) error {
-	f, err := opt.Open(path)
+func readable(path string) error {
+	f, err := input.Options{}.Open(path)
 	if err == nil {
 		defer f.Close()
 		if info, err := f.Stat(); err == nil && info.IsDir() {
-			return fmt.Errorf("%s: it is a folder; name the files in it, or name it alone", path)
+			return fmt.Errorf("%s: it is a folder; name it alone, or the files in it", path)
 		}
 		return nil
 	}
@@ -88,7 +240,7 @@ func (q quiet) Unwrap() error { return q.error }
 
 // cause strips the operation and path that the file system puts before its error.
 func cause(err error) error {
-	var p *os.PathError
+	var p *fs.PathError
 	if errors.As(err, &p) {
 		return p.Err
 	}

@@ -1,12 +1,14 @@
 package csv
 
 import (
+	"errors"
 	"fmt"
 	"io"
 	"iter"
 	"math"
 
 	"wavetally/harmonics/wave"
+	"wavetally/loaders/input"
 	"wavetally/loaders/table"
 	"wavetally/loaders/timebase"
 )
@@ -114,6 +116,10 @@ func (r *run) take(c *chunk) bool {
 	r.pending += c.tail
 	r.odd.merge(&c.odd, r.lines)
 	r.lines += c.lines
+	if errors.Is(c.err, input.ErrCut) {
+		r.source.addNote("truncated", "", "The packed file is cut short in line %d of what is in it; what comes before is used.", r.lines)
+		return true
+	}
 	if c.err != nil {
 		r.fail(c.err)
 		return false

@@ -23,15 +23,17 @@ import (
 )
 
 const (
-	format      = "CSV"
 	headBytes   = 1 << 20
 	maxChannels = 512
 )
 
 // Open reads a table of text as a recording. The error is a [*wave.NotThisFormatError] when the file is no table of
 // numbers, else a [*wave.ParseError] or [*wave.UnsupportedError] that says what to do.
-func Open(path string, opt input.Options) (wave.Source, error) {
-	s := &source{path: path, name: filepath.Base(path), opt: opt}
+func Open(path string, opt input.Options) (wave.Source, error) { return OpenAs(path, "CSV", opt) }
+
+// OpenAs is Open for a table that another package turns into text while it is read; format names what it truly is.
+func OpenAs(path, format string, opt input.Options) (wave.Source, error) {
+	s := &source{path: path, name: filepath.Base(path), format: format, opt: opt}
 	if err := s.open(); err != nil {
 		return nil, err
 	}
@@ -41,6 +43,7 @@ func Open(path string, opt input.Options) (wave.Source, error) {
 // A source is an opened table. Everything but notes is fixed by open.
 type source struct {
 	path, name string
+	format     string
 	opt        input.Options
 	size       int64
 	changed    time.Time
@@ -48,6 +51,7 @@ type source struct {
 	layout   table.Layout
 	channels []channel
 	plan     *plan
+	first    instant // of the first row
 	fit      timebase.Fit
 	header   wave.Header
 	chunk    int // bytes
@@ -57,6 +61,16 @@ type source struct {
 func (s *source) Header() wave.Header { return s.header }
 
 func (s *source) Notes() []wave.Note { return s.notes }
+
+// FirstStamp is the time of the first row in a recording that has times but no start, in s from an origin of its own;
+// ok is false for any other. It serves to put several files of one recording in order.
+func (s *source) FirstStamp() (seconds float64, ok bool) {
+	k := s.layout.Clock
+	if !s.plan.hasTime || k.Kind != table.NumberClock || k.Epoch {
+		return 0, false
+	}
+	return (float64(s.first.whole) + s.first.part) * k.Seconds, true
+}
 
 func (s *source) open() error {
 	head, whole, err := s.readHead()
@@ -86,12 +100,12 @@ func (s *source) readHead() (head []byte, whole bool, err error) {
 		return nil, false, err
 	}
 	if info.IsDir() {
-		return nil, false, &wave.NotThisFormatError{File: s.name, Format: format, Msg: "it is a folder"}
+		return nil, false, &wave.NotThisFormatError{File: s.name, Format: s.format, Msg: "it is a folder"}
 	}
 	s.size, s.changed = info.Size(), info.ModTime()
 	raw := make([]byte, 8192)
 	n, err := io.ReadFull(f, raw)
-	if err != nil && err != io.EOF && err != io.ErrUnexpectedEOF {
+	if !endOfText(err) {
 		return nil, false, s.readError(err)
 	}
 	raw = raw[:n]
@@ -104,13 +118,18 @@ func (s *source) readHead() (head []byte, whole bool, err error) {
 	decoded := s.layout.Encoding.Reader(io.MultiReader(bytes.NewReader(raw), f))
 	head = make([]byte, headBytes)
 	n, err = io.ReadFull(decoded, head)
-	if err != nil && err != io.EOF && err != io.ErrUnexpectedEOF {
+	if !endOfText(err) {
 		return nil, false, s.readError(err)
 	}
 	if binary(head[:min(n, 65536)]) {
-		return nil, false, &wave.NotThisFormatError{File: s.name, Format: format, Msg: "it holds binary data"}
+		return nil, false, &wave.NotThisFormatError{File: s.name, Format: s.format, Msg: "it holds binary data"}
 	}
 	return head[:n], err != nil, nil
+}
+
+// endOfText reports whether a read of the head went well, or ended where the file does.
+func endOfText(err error) bool {
+	return err == nil || err == io.EOF || err == io.ErrUnexpectedEOF || errors.Is(err, input.ErrCut)
 }
 
 // binary reports whether a text has control characters that no text has. NUL bytes alone do not make it so: recorders
@@ -133,7 +152,7 @@ func (s *source) readError(err error) error {
 	if errors.As(err, &known) {
 		return err
 	}
-	return fmt.Errorf("%s: reading failed: %w", s.name, err)
+	return &wave.ParseError{File: s.name, Err: err, Msg: fmt.Sprintf("reading failed: %v", err)}
 }
 
 func (s *source) understand(head []byte, whole bool) error {
@@ -145,7 +164,7 @@ func (s *source) understand(head []byte, whole bool) error {
 	var wrong *table.FormatError
 	switch {
 	case errors.Is(err, table.ErrNoTable):
-		return &wave.NotThisFormatError{File: s.name, Format: format, Msg: err.Error()}
+		return &wave.NotThisFormatError{File: s.name, Format: s.format, Msg: err.Error()}
 	case errors.As(err, &wrong):
 		return &wave.ParseError{File: s.name, Line: wrong.Line, Msg: wrong.Msg}
 	case err != nil:
@@ -206,7 +225,7 @@ func (s *source) note(code, channel, text string, args ...any) {
 }
 
 func (s *source) makeHeader() {
-	s.header.Files = []wave.File{{Name: s.name, Path: s.path, Format: format, Reading: s.layout.String()}}
+	s.header.Files = []wave.File{{Name: s.name, Path: s.path, Format: s.format, Reading: s.layout.String()}}
 	for _, c := range s.channels {
 		s.header.Channels = append(s.header.Channels, c.Channel)
 	}
@@ -220,6 +239,7 @@ func (s *source) findRate(rows []byte, whole bool) error {
 		return &wave.ParseError{File: s.name, Msg: fmt.Sprintf("sampling_rate = %g in the site sheet is no rate; state samples per second", declared)}
 	}
 	points, first := s.firstPoints(rows, whole)
+	s.first = first
 	s.setStart(first)
 	if s.layout.Clock.Kind == table.NumberClock || s.layout.Clock.Kind == table.StampClock {
 		rate, err := s.rateFromStamps(points, whole)
@@ -249,7 +269,7 @@ func (s *source) findRate(rows []byte, whole bool) error {
 		s.header.Rate = stated
 	default:
 		return &wave.UnsupportedError{File: s.name, Line: s.layout.Line,
-			Msg: "no column tells the time and no line above states the sampling rate; state sampling_rate, in Hz, under [file] in the site sheet"}
+			Msg: "no column tells the time and no line above states the sampling rate; state it with --sampling-rate, or sampling_rate under [file] in the site sheet"}
 	}
 	return nil
 }
@@ -302,7 +322,7 @@ func (s *source) rateFromStamps(points []timebase.Point, whole bool) (float64, e
 	case fit.Jitter > 0.5*fit.Interval:
 		s.note("time-stamps-jitter", "", "Time stamps stray by up to %.3g ms from even steps; rows are taken as evenly spaced at %.7g samples a second (± %.2g %%).",
 			fit.Jitter*1e3, rate, fit.Uncertainty()*100)
-	case fit.Uncertainty() > 2e-5:
+	case !fit.Sure():
 		s.note("rate-inferred", "", "Time stamps are too coarse to tell the sampling rate better than %.6g to %.6g Hz; %.7g is used. State sampling_rate under [file] in the site sheet if it is known.",
 			1/fit.Top, 1/fit.Low, rate)
 	}

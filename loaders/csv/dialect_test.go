@@ -159,14 +159,14 @@ var dialects = []struct {
 	{name: "comment lines", w: writing{head: "# made up\n# time (s),V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: seconds(7), number: point(3)}},
 	{name: "milliseconds", w: writing{head: "Time [ms],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.4f", float64(r)/signalRate*1e3) }, number: point(3)}},
 	{name: "microseconds, whole", w: writing{head: "Time [us],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.0f", float64(r)/signalRate*1e6) }, number: point(3)}},
-	{name: "milliseconds, whole", w: writing{head: "Time [ms],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.0f", float64(r)/signalRate*1e3) }, number: point(3)}, notes: "rate-inferred"},
+	{name: "milliseconds, whole", w: writing{head: "Time [ms],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.0f", float64(r)/signalRate*1e3) }, number: point(3)}},
 	{name: "seconds to a hundredth, cut off", w: writing{head: "Time [s],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.2f", math.Floor(float64(r)/signalRate*100)/100) }, number: point(3)}},
 	{name: "six digits", w: writing{head: "Time [s],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.6g", float64(r)/signalRate) }, number: point(3)}},
 	{name: "single precision", w: writing{head: "Time [s],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprint(float32(float64(r)/signalRate) + 4) }, number: point(3)}},
 	{name: "time before the trigger", w: writing{head: "Time [s],V1 [V],V2 [V],I1 [A]\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.7f", float64(r)/signalRate-0.5) }, number: point(3)}},
 	{name: "sample index", w: writing{head: "Sample,V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprint(r + 1) }, number: point(3)}, rate: signalRate, reading: "sample numbers"},
 	{name: "ISO 8601 with Z", w: writing{head: "timestamp,V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: at("2006-01-02T15:04:05.000000Z"), number: point(3)}, start: "2026-03-14T09:59:59Z"},
-	{name: "ISO 8601 to the tenth", w: writing{head: "timestamp,V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: at("2006-01-02T15:04:05.0Z"), number: point(3)}, start: "2026-03-14T09:59:59Z", notes: "rate-inferred"},
+	{name: "ISO 8601 to the tenth", w: writing{head: "timestamp,V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: at("2006-01-02T15:04:05.0Z"), number: point(3)}, start: "2026-03-14T09:59:59Z"},
 	{name: "date and time apart", w: writing{head: "Date;Time;V1 (V);V2 (V);I1 (A)\n", delimiter: ";", end: "\n", time: at("02.01.2006;15:04:05,0000000"), number: comma(3)}, start: "2026-03-14T09:59:59"},
 	{name: "date, time and milliseconds apart", w: writing{head: "Date\tTime\tms\tV1 (V)\tV2 (V)\tI1 (A)\n", delimiter: "\t", end: "\n", time: func(r int) string {
 		return at("02.01.2006\t15:04:05")(r) + fmt.Sprintf("\t%.3f", math.Mod(float64(r)/signalRate*1e3, 1e3))

@@ -66,6 +66,7 @@ func (k *cutter) last(c *chunk, b []byte, err error) bool {
 	k.done = true
 	if err != io.EOF && err != io.ErrUnexpectedEOF {
 		c.err = err
+		b = b[:lastLineEnd(b)]
 	}
 	if len(b) > maxLine && lastLineEnd(b) == 0 {
 		c.err, b = errLongLine, b[:0]

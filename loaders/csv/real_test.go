@@ -66,7 +66,7 @@ func TestMotorWithoutRate(t *testing.T) {
 		t.Skip("../shared/real/motor_3phase_csv is not here")
 	}
 	_, err := csv.Open(path, input.Options{})
-	const want = "SC_HLT_004.csv:1: no column tells the time and no line above states the sampling rate; state sampling_rate, in Hz, under [file] in the site sheet"
+	const want = "SC_HLT_004.csv:1: no column tells the time and no line above states the sampling rate; state it with --sampling-rate, or sampling_rate under [file] in the site sheet"
 	if err == nil || err.Error() != want {
 		t.Errorf("error is %v, want %s", err, want)
 	}

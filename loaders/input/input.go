@@ -3,12 +3,16 @@
 package input
 
 import (
+	"errors"
 	"io/fs"
 	"os"
 	"time"
 
 	"wavetally/harmonics/site"
 )
+
+// ErrCut is what reading a packed file gives where the file ends too early: what came before it is good.
+var ErrCut = errors.New("the packed file is cut short")
 
 // Options says what the user declared about the files. The zero value declares nothing.
 type Options struct {

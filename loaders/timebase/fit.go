@@ -39,6 +39,17 @@ func (f Fit) Rate() float64 {
 // Uncertainty is the half width of the range of possible rates, as a share of the rate.
 func (f Fit) Uncertainty() float64 { return (f.Top - f.Low) / 2 / f.Interval }
 
+// Sure reports whether the rate is known for all that it is used for: closely enough, or because a number as simple as
+// it would hardly lie among the possible ones by chance.
+func (f Fit) Sure() bool {
+	if f.Uncertainty() < 2e-5 {
+		return true
+	}
+	_, rate := roundest(1/f.Top, 1/f.Low)
+	_, interval := roundest(f.Low, f.Top)
+	return f.Jitter == 0 && math.Pow10(min(rate, interval))*2*f.Uncertainty() < 0.05
+}
+
 // Errors of From.
 var (
 	ErrTooFew   = errors.New("too few time stamps")
