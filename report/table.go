@@ -1,5 +1,7 @@
 package report
 
+import "time"
+
 // A Table is rows of cells under named columns. PDF, XLSX and terminal show the same tables.
 type Table struct {
 	Key     string // unique within a survey, stable, such as "verdict"; names sheets and ranges
@@ -24,5 +26,7 @@ type Cell struct {
 	Text   string
 	Number Number // meaningful when IsNumber
 	IsNum  bool
-	Result string // "within", "exceeds", "undecided" or "not assessed" where the cell is a verdict; else ""
+	Unit   string    // of Number, where the column has none because its rows differ
+	Time   time.Time // the moment, where the cell is one and the recording's start is known; else zero
+	Result string    // "within", "exceeds", "undecided" or "not assessed" where the cell is a verdict; else ""
 }

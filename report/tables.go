@@ -4,6 +4,7 @@ import (
 	"math"
 	"strconv"
 	"strings"
+	"time"
 )
 
 // Tables lists the survey's tables in the order of the documents; those without rows are left out. Tables that only a
@@ -70,6 +71,15 @@ func degrees(n Number) Cell {
 // whole is a count.
 func whole(n int) Cell { return Cell{Text: strconv.Itoa(n), Number: Number(n), IsNum: true} }
 
+// moment is when something at a time of the recording happened.
+func (r Recording) moment(at float64) Cell {
+	c := word(r.Clock(at))
+	if r.Start != nil {
+		c.Time = r.Start.Add(time.Duration(at * float64(time.Second)))
+	}
+	return c
+}
+
 // blank is a cell of a number that does not apply, as against one that was not measured.
 var blank = Cell{}
 
@@ -126,5 +136,5 @@ func (t *Table) add(name, value, remark string) {
 
 // addNumber adds a declared or measured number, which stays a number in a spreadsheet.
 func (t *Table) addNumber(name string, v float64, unit, remark string) {
-	t.Rows = append(t.Rows, []Cell{word(name), {Text: Quantity(v, unit), Number: Number(v), IsNum: true}, word(remark)})
+	t.Rows = append(t.Rows, []Cell{word(name), {Text: Quantity(v, unit), Number: Number(v), IsNum: true, Unit: unit}, word(remark)})
 }

@@ -186,7 +186,7 @@ func evidence(numbers map[string]Number) string {
 func eventTable(s *Survey) Table {
 	t := Table{Key: "events", Title: "Voltage events: their intervals are flagged", Columns: []Column{text("kind", "Kind"), text("at", "Start"), number("length", "Length", "s"), number("extreme", "Extreme", "V"), number("pct", "Of nominal", "%"), text("channels", "On")}}
 	for _, e := range s.Recording.Events {
-		t.Rows = append(t.Rows, []Cell{word(e.Kind), word(s.Recording.Clock(float64(e.At))), value(e.Length), value(e.ExtremeV), value(e.Pct), word(list(e.Channels))})
+		t.Rows = append(t.Rows, []Cell{word(e.Kind), s.Recording.moment(float64(e.At)), value(e.Length), value(e.ExtremeV), value(e.Pct), word(list(e.Channels))})
 	}
 	return t
 }
@@ -199,7 +199,7 @@ func excludedTable(s *Survey) Table {
 	}
 	ivs, name := seriesOf(s.Summary)
 	for _, x := range shadesOf(ivs) {
-		t.Rows = append(t.Rows, []Cell{word(s.Recording.Clock(x.From)), word(s.Recording.Clock(x.To)), value(Number(x.To - x.From)), word(x.Why)})
+		t.Rows = append(t.Rows, []Cell{s.Recording.moment(x.From), s.Recording.moment(x.To), value(Number(x.To - x.From)), word(x.Why)})
 	}
 	t.Title = "Left out of statistics, in intervals of " + name
 	return t

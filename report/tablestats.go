@@ -60,12 +60,12 @@ func (t *Table) addStats(s *Survey, c *Channel, quantity string, minutes, second
 			low, high := Apart(float64(set.stats.P95Low), float64(set.stats.P95High))
 			bounds = low + " to " + high
 		}
-		when := ""
+		when := blank
 		if !math.IsNaN(at) {
-			when = s.Recording.Clock(at)
+			when = s.Recording.moment(at)
 		}
 		t.Rows = append(t.Rows, []Cell{word(c.Name), word(quantity), word(set.interval), whole(set.stats.N), value(mean), value(set.stats.P50), value(set.stats.P95), word(bounds),
-			value(set.stats.P99), value(set.stats.Max), word(when)})
+			value(set.stats.P99), value(set.stats.Max), when})
 	}
 }
 
@@ -97,7 +97,7 @@ func dayTable(s *Survey) Table {
 	}
 	il := s.Site.Supply.DemandCurrent
 	for _, d := range s.Summary.Days {
-		row := []Cell{word(s.Recording.Clock(d.At)), whole(d.N), value(Number(100 * float64(d.N) / float64(d.Want)))}
+		row := []Cell{s.Recording.moment(d.At), whole(d.N), value(Number(100 * float64(d.N) / float64(d.Want)))}
 		for i := range s.Summary.Channels {
 			v := d.Channels[i].THD
 			if tdd(&s.Summary.Channels[i], il) {

@@ -44,4 +44,6 @@ type Finding struct {
 	OfOrder   float64 // the part of Factor that the order brings (even orders of IEEE 519 currents)
 	OfStat    float64 // the part of Factor that the statistic brings
 	BasisSize float64 // the number behind Basis in the channel's unit; NaN for the fundamental
+	Floor     float64 // what noise alone reads, in Unit; NaN when unknown
+	Top       int     // highest order of a total; 0 for a single order
 }

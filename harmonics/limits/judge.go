@@ -99,7 +99,7 @@ func (j *judge) noTable(c int, kind string) []Finding {
 	nan := math.NaN()
 	f := Finding{RuleSet: j.set.Name, Channel: j.sum.Channels[c].Role, Quantity: map[string]string{voltage: "thd", current: "tdd"}[kind],
 		Value: nan, ValueLow: nan, ValueHigh: nan, SampleLow: nan, SampleHigh: nan, OverPct: nan, Level: nan, Limit: nan, Share: nan,
-		TablePct: nan, Factor: nan, OfOrder: nan, OfStat: nan, BasisSize: nan, Unit: "%", Result: NotAssessed, Why: why}
+		TablePct: nan, Factor: nan, OfOrder: nan, OfStat: nan, BasisSize: nan, Floor: nan, Unit: "%", Result: NotAssessed, Why: why}
 	for _, t := range j.set.tables {
 		if t.quantity == kind {
 			f.Clause = t.Clause
@@ -210,6 +210,10 @@ func (j *judge) finding(s *setting, r *row, c *cell, q quantity, st Statistic) F
 	f.Unverified = c.Unverified() || from.Unverified() || st.Unverified() && f.OfStat != 1
 	got := j.reader.read(st, q)
 	f.take(got, j.sum.Channels[s.channel].Uncertainty)
+	f.Floor = q.floor(&j.sum.Channels[s.channel])
+	if q.order == 0 {
+		f.Top = q.top
+	}
 	v := verdict{judge: j, setting: s, cell: c, quantity: q, statistic: st, reading: got, finding: &f}
 	v.decide()
 	return f

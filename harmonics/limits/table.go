@@ -16,6 +16,7 @@ type Table struct {
 	Voltage  Span   // nominal voltages, line to line in V, that the table is for
 	RowHead  string // what tells rows apart: "nominal voltage", "Isc/IL" or "order"
 	Columns  []string
+	Orders   []Orders // of each column; nil in a table by order, where Label tells
 	Rows     []TableRow
 	Evidence
 }
@@ -136,7 +137,7 @@ func (r *RuleSet) Tables() []Table {
 		if t.rowsBy == byOrder {
 			p.Columns, p.Rows = []string{"limit"}, r.rowsByOrder(t)
 		} else {
-			p.Columns, p.Rows = columnNames(t), r.rowsBySpan(t)
+			p.Columns, p.Orders, p.Rows = columnNames(t), t.columns, r.rowsBySpan(t)
 		}
 		out = append(out, p)
 	}

@@ -98,18 +98,19 @@ func (v *verdict) tellStrictest() {
 	case !math.IsNaN(f.Value):
 		v.say("the value is %s %% of the limit of that row; other rows allow more", sig(f.Share, 3))
 	case v.quantity.basis == basisDemand && f.Limit > 0:
-		if amps := v.levelWithoutBasis(); amps > 0 {
-			f.Level = amps
+		got := v.readingWithoutBasis()
+		if amps := got.value; amps > 0 {
+			f.Level, f.Indicative = amps, got.indicative != ""
 			v.say("%s A would keep to the strictest row's %s %% for any demand current from %s A", sig(amps, 3), sig(f.Limit, 3), sig(100*amps/f.Limit, 3))
 		}
 	}
 }
 
-// levelWithoutBasis reads the statistic in amperes where the demand current is not declared.
-func (v *verdict) levelWithoutBasis() float64 {
+// readingWithoutBasis reads the statistic in amperes where the demand current is not declared.
+func (v *verdict) readingWithoutBasis() reading {
 	q := v.quantity
 	q.size = 100 // so that per cent are amperes
-	return v.reader.read(v.statistic, q).value
+	return v.reader.read(v.statistic, q)
 }
 
 // tellIndicative says why the record cannot decide, what it shows so far, and what would settle it.
