@@ -215,3 +215,18 @@ func FuzzParse(f *testing.F) {
 		}
 	})
 }
+
+func TestLineOfSource(t *testing.T) {
+	path := filepath.Join(t.TempDir(), "s.toml")
+	if err := os.WriteFile(path, []byte("# head\n[[channel]]\nsource = \"a\"\n\n[[channel]]\nmeasures = \"V2\"\nsource = \"b\"\n"), 0o600); err != nil {
+		t.Fatal(err)
+	}
+	for source, want := range map[string]int{"a": 3, "b": 7, "c": 0} {
+		if got := LineOfSource(path, source); got != want {
+			t.Errorf("source %q in line %d, want %d", source, got, want)
+		}
+	}
+	if got := LineOfSource(path+".not", "a"); got != 0 {
+		t.Errorf("a missing file: line %d, want 0", got)
+	}
+}
