@@ -29,6 +29,7 @@ type batch struct {
 	cuts   []cut
 	out    []windowResult // as cuts
 	upper  []float64      // [channel], mean square in the upper fifth of the band, of the batch's first window
+	number int            // of the recording's batches
 	done   chan struct{}
 
 	nominal   float64
@@ -129,7 +130,7 @@ func (w *worker) channel(b *batch, c cut, k int, r *windowResult, first bool) {
 	}
 	spectrum := w.plan.Transform(w.spectrum[:want], y)
 	if first {
-		b.upper[k] = upperBand(spectrum, c, b.rate)
+		b.upper[k] = upperBand(spectrum, c, b.rate, b.frame.cycles)
 		spectrum = spectrum[:b.frame.lines]
 	}
 	out.sum(spectrum, b.frame, w.linesOnly)
@@ -143,8 +144,11 @@ func (w *worker) channel(b *batch, c cut, k int, r *windowResult, first bool) {
 	}
 	x := b.data[k]
 	from, to := int(math.Ceil(c.start))-b.base, int(math.Ceil(c.start+c.length))-b.base
-	out.raw.look(x[max(from, 0):min(to, len(x))], first)
+	out.raw.look(x[max(from, 0):min(to, len(x))], first && b.number%stepEvery == 0)
 }
+
+// stepEvery is in how many batches once the step of the converter is looked for: it takes a sort.
+const stepEvery = 32
 
 // halves fills in the mean square of every half cycle, and of the window.
 func (w *windowChannel) halves(y []float64, cycles int) {
@@ -172,13 +176,16 @@ func dot(a, b []float64) float64 {
 	return s0 + s1
 }
 
-// upperBand sums the lines in the upper fifth of the band below half the sampling rate, or half the working rate.
-func upperBand(spectrum []complex128, c cut, rate float64) float64 {
-	line := c.hz / math.Round(c.hz*c.span)
+// upperBand sums the lines in the upper fifth of the band below half the sampling rate, or half the working rate, but for
+// those of harmonics and beside them.
+func upperBand(spectrum []complex128, c cut, rate float64, cycles int) float64 {
+	line := c.hz / float64(cycles)
 	top := min(rate/2, line*float64(len(spectrum)-1))
 	var sum float64
 	for k := int(0.8 * top / line); k <= int(top/line) && k < len(spectrum); k++ {
-		sum += square(spectrum[k])
+		if d := k % cycles; d > 1 && d < cycles-1 || cycles < 4 {
+			sum += square(spectrum[k])
+		}
 	}
 	return sum
 }

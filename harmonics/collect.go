@@ -130,7 +130,9 @@ func (c *collector) window(b *batch, i int, flags Flags, w *worker) {
 	}
 	c.count.Total++
 	c.boundary(cut)
-	c.facts(b, i)
+	if flags == 0 {
+		c.facts(b, i)
+	}
 	c.keepLines(cut, r)
 	if flags&Unlocked != 0 {
 		c.lock.Unlocked++
@@ -206,7 +208,7 @@ func (t *total) add(w *windowChannel, lines []float64, turn *[Orders]complex128)
 	}
 }
 
-// facts gathers what the samples tell, of every window with samples.
+// facts gathers what the samples of an unflagged window tell.
 func (c *collector) facts(b *batch, i int) {
 	for k := range c.channels {
 		w := &b.out[i].channels[k]

@@ -27,6 +27,7 @@ type cutter struct {
 	seg     segment
 	short   []piece // segments shorter than a window, kept until it is clear whether there are longer ones
 	windows int
+	batches int
 	gaps    []Gap
 	end     float64 // s, just after the last sample seen
 	samples int64
@@ -196,6 +197,8 @@ func (c *cutter) close() {
 }
 
 func (c *cutter) dispatch(b *batch) {
+	b.number = c.batches
+	c.batches++
 	b.rate, b.frame, b.kernel = c.seg.rate, c.seg.frame, c.seg.kernel
 	b.nominal, b.reference, b.linesOnly = c.nominal, c.reference, c.linesOnly
 	c.hand(b)

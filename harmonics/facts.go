@@ -27,7 +27,7 @@ type ChannelFacts struct {
 	// DCLow and DCHigh are the lowest and highest mean of a window.
 	DCLow, DCHigh float64
 
-	// UpperBand is the rms of the lines in the upper fifth of the band below half the sampling rate (below half the
+	// UpperBand is the rms of the lines, harmonics left out, in the upper fifth of the band below half the sampling rate (below half the
 	// working rate, where the recording is decimated), in the channel's unit. A spectrum that does not fall towards
 	// it has probably been folded.
 	UpperBand float64

@@ -1,6 +1,9 @@
 package harmonics
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // rawFacts are facts on the samples as recorded, of one window of one channel, or merged over many.
 type rawFacts struct {
@@ -41,15 +44,29 @@ func (r *rawFacts) look(x []float64, steps bool) {
 	}
 }
 
+// smallestStep is the smallest difference between two unequal samples, wherever they are: neighbours alone would show the
+// slope of a signal sampled a few times a cycle.
 func smallestStep(x []float64) float64 {
+	sorted := slices.Clone(x[:min(len(x), stepSamples)])
+	if len(sorted) == 0 {
+		return math.Inf(1)
+	}
+	slices.Sort(sorted)
 	step := math.Inf(1)
-	for i := 1; i < len(x); i++ {
-		if d := math.Abs(x[i] - x[i-1]); d < step && d > 0 {
-			step = d
+	for i := 1; i < len(sorted); i++ {
+		if d := sorted[i] - sorted[i-1]; d > 0 {
+			step = min(step, d)
 		}
+	}
+	// Differences of values scaled to V or A are not exact: what is a rounding error of them is no step.
+	if span := sorted[len(sorted)-1] - sorted[0]; step < 1e-12*span {
+		return math.Inf(1)
 	}
 	return step
 }
+
+// stepSamples is how many samples are looked at for the step.
+const stepSamples = 4096
 
 // flat is the number of equal samples that make a flat run.
 const flat = 3

@@ -149,10 +149,10 @@ func (t *tracker) window(start float64, cycles int, x []float64, base int) (leng
 	if !ok {
 		return length, t.lost(0)
 	}
-	if own.residual > jump || math.Abs(own.drift) > rush {
-		flags |= Step
+	if flags = t.lost(own.amp); flags == 0 && (own.residual > jump || math.Abs(own.drift) > rush) {
+		flags = Step
 	}
-	return float64(cycles) * t.rate / own.hz, flags | t.lost(own.amp)
+	return float64(cycles) * t.rate / own.hz, flags
 }
 
 func (t *tracker) lost(amp float64) Flags {
@@ -163,8 +163,9 @@ func (t *tracker) lost(amp float64) Flags {
 }
 
 type phaseFit struct {
-	hz, drift, residual, scatter, amp float64
-	ok                                bool
+	hz, drift, residual, scatter float64
+	amp                          float64 // rms of the fundamental where it is weakest inside the window
+	ok                           bool
 }
 
 // fit lays a parabola through the marks within margin of the window, weighted by a raised cosine so that the ripple of
@@ -175,7 +176,7 @@ func (t *tracker) fit(start, length, margin float64) phaseFit {
 	var s [5]float64 // weighted moments of u = (at-middle)/half
 	var r [3]float64
 	count := 0
-	var amp, first float64
+	amp, first := math.Inf(1), 0.0
 	for _, m := range t.marks {
 		u := (m.at - middle) / half
 		if u <= -1 || u >= 1 {
@@ -184,7 +185,7 @@ func (t *tracker) fit(start, length, margin float64) phaseFit {
 		if count == 0 {
 			first = m.phase
 		}
-		w := 1 + math.Cos(math.Pi*u)
+		w := t.weight(m, u)
 		phase := m.phase - first
 		p := w
 		for i := range s {
@@ -194,7 +195,9 @@ func (t *tracker) fit(start, length, margin float64) phaseFit {
 			}
 			p *= u
 		}
-		amp += w * m.amp
+		if math.Abs(m.at-middle) <= length/2 {
+			amp = min(amp, m.amp)
+		}
 		count++
 	}
 	if count < 3 {
@@ -212,13 +215,22 @@ func (t *tracker) fit(start, length, margin float64) phaseFit {
 			continue
 		}
 		d := m.phase - first - (a + b*u + c*u*u)
-		residual += (1 + math.Cos(math.Pi*u)) * d * d
-		t.left = append(t.left, d)
+		residual += t.weight(m, u) * d * d
+		if m.amp > t.usual/3 {
+			t.left = append(t.left, d)
+		}
 	}
-	f := phaseFit{hz: b / half * t.rate / (2 * math.Pi), residual: math.Sqrt(residual / s[0]), amp: amp / s[0]}
+	f := phaseFit{hz: b / half * t.rate / (2 * math.Pi), residual: math.Sqrt(residual / s[0]), amp: amp}
 	f.scatter = scatter(t.left)
 	f.ok = f.hz > t.low && f.hz < t.high
 	return f
+}
+
+// weight is that of a mark at u, -1..1 over the stretch of the fit. A mark taken where the fundamental was low or gone
+// says little.
+func (t *tracker) weight(m mark, u float64) float64 {
+	a := min(1, m.amp/t.usual)
+	return (1 + math.Cos(math.Pi*u)) * a * a
 }
 
 // scatter estimates the standard deviation of noise in d from its second differences, by their median; a step or a slow
@@ -270,7 +282,7 @@ func (t *tracker) own(start, length float64, x []float64, base int) (phaseFit, b
 	c := t.fine
 	count := int(float64(fineCycles)*length/float64(c.length)) - 1
 	var at, phase []float64
-	var amp float64
+	amp := math.Inf(1)
 	for i := range count {
 		from := int(math.Round(start + (length-float64(c.length))*float64(i)/float64(count-1)))
 		if from < base || from-base+c.length > len(x) {
@@ -284,7 +296,7 @@ func (t *tracker) own(start, length float64, x []float64, base int) (phaseFit, b
 			m += 2 * math.Pi * math.Round((ahead-m)/(2*math.Pi))
 		}
 		at, phase = append(at, here), append(phase, m)
-		amp += cmplx.Abs(p) / float64(count)
+		amp = min(amp, cmplx.Abs(p))
 	}
 	if count < 3 {
 		return phaseFit{}, false
