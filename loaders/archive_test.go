@@ -111,7 +111,7 @@ func TestBadArchives(t *testing.T) {
 		{"empty.zip", zipped(t, map[string]string{"notes.md": "x"}), "empty.zip: no recording is in this zip (files ending in .csv, .txt, .cfg, .cff or .wav); unpack it and name the files"},
 		{"nested.zip", zipped(t, map[string]string{"inner.zip": string(good)}), "nested.zip: no recording is in this zip (files ending in .csv, .txt, .cfg, .cff or .wav); unpack it and name the files"},
 		{"noise.csv.gz", []byte("\x1f\x8b\x08\x00garbage that is no deflate stream"), ""},
-		{"text.zip", zipped(t, map[string]string{"a.csv": "no numbers here\nnor here\n"}), "text.zip/a.csv: not a recording that can be read: a table of text (CSV): no rows of numbers were found in it; export the waveforms as COMTRADE, WAV, CSV or XLSX"},
+		{"text.zip", zipped(t, map[string]string{"a.csv": "no numbers here\nnor here\n"}), "text.zip/a.csv: not a recording that can be read: it is none of COMTRADE, WAV and XLSX, and as a table of text no rows of numbers were found in it; export the waveforms as one of these"},
 		{"broken.zip", zipped(t, map[string]string{"a.csv": ""}), "broken.zip/a.csv: the file is empty; export the recording again"},
 		{"renamed.csv", gzipped(t, "x"), "renamed.csv: it is packed with gzip but its name does not end in .gz; rename it"},
 	} {

@@ -14,6 +14,7 @@ import (
 	"wavetally/harmonics/wave"
 	"wavetally/loaders/csv"
 	"wavetally/loaders/input"
+	"wavetally/loaders/xlsx"
 )
 
 // Options says what the user declared about the files.
@@ -27,7 +28,8 @@ type format struct {
 
 // formats are tried in this order; a table of text, which has no mark of its own, comes last.
 var formats = []format{
-	{"a table of text (CSV)", csv.Open},
+	{"XLSX", xlsx.Open},
+	{"CSV", csv.Open},
 }
 
 // Open opens all paths together as one recording. Its errors are of three kinds, told apart with errors.As:
@@ -133,13 +135,11 @@ func withoutCompanions(items []item) []item {
 
 // open opens an item with the first format that knows it.
 func (it item) open() (wave.Source, error) {
-	var tried []string
+	var other *wave.NotThisFormatError
 	for _, f := range formats {
 		src, err := f.open(it.path, it.opt)
-		var other *wave.NotThisFormatError
 		switch {
 		case errors.As(err, &other):
-			tried = append(tried, f.name+": "+other.Msg)
 		case err != nil:
 			return nil, it.named(err)
 		case it.opt.FS != nil:
@@ -149,7 +149,7 @@ func (it item) open() (wave.Source, error) {
 		}
 	}
 	return nil, &wave.NotThisFormatError{File: it.name, Format: "a recording that can be read",
-		Msg: strings.Join(tried, "; ") + "; export the waveforms as COMTRADE, WAV, CSV or XLSX"}
+		Msg: fmt.Sprintf("it is none of COMTRADE, WAV and XLSX, and as a table of text %s; export the waveforms as one of these", other.Msg)}
 }
 
 // named puts the archive's name before that of the file in it.
@@ -175,6 +175,9 @@ type packed struct {
 	wave.Source
 	it item
 }
+
+// Unwrap returns the recording as its loader has it.
+func (p packed) Unwrap() wave.Source { return p.Source }
 
 // Header names the archive as the file, since that is what there is on disk.
 func (p packed) Header() wave.Header {

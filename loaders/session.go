@@ -67,12 +67,16 @@ func newPart(src wave.Source) part {
 	stem := strings.TrimSuffix(p.name, ".gz")
 	stem = strings.TrimSuffix(stem, filepath.Ext(stem))
 	p.series, p.marker = channelMark(stem)
-	inner := src
-	if z, ok := src.(packed); ok {
-		inner = z.Source
-	}
-	if s, ok := inner.(stamped); ok {
-		p.stamp, p.stamps = s.FirstStamp()
+	for src != nil {
+		if s, ok := src.(stamped); ok {
+			p.stamp, p.stamps = s.FirstStamp()
+			break
+		}
+		outer, ok := src.(interface{ Unwrap() wave.Source })
+		if !ok {
+			break
+		}
+		src = outer.Unwrap()
 	}
 	return p
 }

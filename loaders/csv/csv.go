@@ -225,7 +225,11 @@ func (s *source) note(code, channel, text string, args ...any) {
 }
 
 func (s *source) makeHeader() {
-	s.header.Files = []wave.File{{Name: s.name, Path: s.path, Format: s.format, Reading: s.layout.String()}}
+	reading := s.layout.Rows()
+	if s.format == "CSV" {
+		reading = s.layout.String()
+	}
+	s.header.Files = []wave.File{{Name: s.name, Path: s.path, Format: s.format, Reading: reading}}
 	for _, c := range s.channels {
 		s.header.Channels = append(s.header.Channels, c.Channel)
 	}

@@ -95,9 +95,13 @@ func (l Layout) String() string {
 	if l.Mark == ',' {
 		add("decimal comma")
 	}
-	add("first row of numbers in line %d", l.Line)
-	parts = append(parts, l.clockText())
+	parts = append(parts, l.Rows())
 	return strings.Join(parts, "; ")
+}
+
+// Rows says in one line where the rows are and what tells their time.
+func (l Layout) Rows() string {
+	return fmt.Sprintf("first row of numbers in line %d; %s", l.Line, l.clockText())
 }
 
 func (l Layout) clockText() string {

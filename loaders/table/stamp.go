@@ -3,6 +3,7 @@ package table
 import (
 	"bytes"
 	"strings"
+	"time"
 )
 
 // An Order says how three short numbers make a date.
@@ -326,4 +327,10 @@ func (p *stampParser) zone() {
 	}
 	p.s.Sec -= offset
 	p.s.HasZone, p.b = true, nil
+}
+
+// Civil returns the Gregorian date of a day counted from 1970-01-01.
+func Civil(days int64) (year, month, day int) {
+	date := time.Unix(days*86400, 0).UTC()
+	return date.Year(), int(date.Month()), date.Day()
 }

@@ -147,16 +147,15 @@ func bound(points []Point, start, origin float64) Fit {
 	}
 	slices.Sort(steps)
 	span := float64(points[len(points)-1].Row - points[0].Row)
-	f.Interval = minimum(func(b float64) float64 { return excess(points, b, 0, origin) }, start, max(0.01*start, 4*steps[len(steps)/2]/span))
-	const single = 1.0 / (1 << 23) // spacing of single-precision numbers near 1
-	for _, precision := range []float64{0, single} {
-		g := func(b float64) float64 { return excess(points, b, precision, origin) }
+	f.Interval = minimum(func(b float64) float64 { return excess(points, b, once, origin) }, start, max(0.01*start, 4*steps[len(steps)/2]/span))
+	for _, r := range []rounding{once, twice, single} {
+		g := func(b float64) float64 { return excess(points, b, r, origin) }
 		if g(f.Interval) <= 0 {
 			f.Low, f.Top = edge(g, f.Interval, -1), edge(g, f.Interval, +1)
 			return f
 		}
 	}
-	f.Jitter = excess(points, f.Interval, 0, origin)
+	f.Jitter = excess(points, f.Interval, once, origin)
 	f.Interval = start
 	spread := f.Jitter / span / math.Sqrt(float64(len(points))) * 2
 	f.Low, f.Top = start-spread, start+spread
@@ -182,13 +181,24 @@ func few(points []Point, n int) []Point {
 	return append(kept, points[len(points)-1])
 }
 
+// A rounding is how far a stamp may be off: so many of its own steps, and a share of its value.
+type rounding struct{ steps, share float64 }
+
+// Roundings that stamps have been through: as written, when they were rounded before they were cut to their decimals,
+// and when they were held as single-precision numbers, whose spacing near 1 is 2^-23.
+var (
+	once   = rounding{steps: 0.5}
+	twice  = rounding{steps: 1}
+	single = rounding{steps: 0.5, share: 1.0 / (1 << 23)}
+)
+
 // excess is how far the stamps are from passing one line of the given slope within their resolution, in s; it is at
 // most 0 when they do. It is a convex function of the slope.
-func excess(points []Point, slope, precision, origin float64) float64 {
+func excess(points []Point, slope float64, r rounding, origin float64) float64 {
 	low, top := math.Inf(-1), math.Inf(1)
 	x0 := points[0].Row
 	for _, p := range points {
-		tolerance := p.Step/2*(1+1e-6) + (precision+4e-16)*math.Abs(p.T+origin)
+		tolerance := p.Step*r.steps*(1+1e-6) + (r.share+4e-16)*math.Abs(p.T+origin)
 		rest := p.T - slope*float64(p.Row-x0)
 		low, top = max(low, rest-tolerance), min(top, rest+tolerance)
 	}
