@@ -15,6 +15,7 @@ import (
 // wide at each order's limit. All panels share the y axis.
 func drawBars(c draw.Canvas, ch report.Chart) {
 	channels := measuredSeries(ch)
+	ch.Y.High *= 1.06 // room for a bar's name
 	weights := make([]float64, len(channels))
 	for i := range weights {
 		weights[i] = 1
@@ -80,17 +81,19 @@ func (p panel) bars(s report.Series, highest []float64, limits []report.LimitLin
 	l := lookOf(s.Role)
 	named := p.worst(s, limits)
 	for i, h := range s.X {
-		v := s.Y[i]
+		v, most := value(s.Y, i), value(highest, i)
 		if math.IsNaN(v) || h < p.x.low || h > p.x.high {
 			continue
 		}
 		x, top := p.x.at(h), p.y.at(p.y.clamp(v))
-		if i < len(highest) && highest[i] > v {
-			p.StrokeLine2(solid(gray(0x50), 0.6), x, top, x, p.y.at(p.y.clamp(highest[i])))
+		reach := top
+		if most > v {
+			reach = p.y.at(p.y.clamp(most))
+			p.StrokeLine2(solid(gray(0x50), 0.6), x, top, x, reach)
 		}
 		p.SetColor(l.ink)
 		p.Fill(rectangle(vg.Rectangle{Min: vg.Point{X: x - 0.31*slot, Y: p.Min.Y}, Max: vg.Point{X: x + 0.31*slot, Y: top}}))
-		limit, reach := limitAt(limits, h), p.y.at(p.y.clamp(math.Max(v, at(highest, i))))
+		limit := limitAt(limits, h)
 		if v > limit {
 			p.over(x, reach)
 		}
@@ -103,18 +106,19 @@ func (p panel) bars(s report.Series, highest []float64, limits []report.LimitLin
 	}
 }
 
-func at(v []float64, i int) float64 {
-	if i < len(v) && !math.IsNaN(v[i]) {
+// value is v[i], NaN where there is none.
+func value(v []float64, i int) float64 {
+	if i < len(v) {
 		return v[i]
 	}
-	return math.Inf(-1)
+	return math.NaN()
 }
 
 // worst finds the bar to name.
 func (p panel) worst(s report.Series, limits []report.LimitLine) int {
 	best, index := 0.0, -1
 	for i, h := range s.X {
-		rank := s.Y[i]
+		rank := value(s.Y, i)
 		if len(limits) > 0 {
 			rank /= limitAt(limits, h)
 		}
@@ -133,8 +137,8 @@ func limitAt(limits []report.LimitLine, h float64) float64 {
 			lowest = math.Min(lowest, l.Y[0])
 		}
 		for i, x := range l.X {
-			if x == h && !math.IsNaN(l.Y[i]) {
-				lowest = math.Min(lowest, l.Y[i])
+			if v := value(l.Y, i); x == h && !math.IsNaN(v) {
+				lowest = math.Min(lowest, v)
 			}
 		}
 	}
@@ -162,7 +166,7 @@ func (p panel) name(h float64, x, top vg.Length, limit float64) {
 	if limit < math.Inf(1) && top > p.y.at(p.y.clamp(limit)) {
 		style.XAlign, x = draw.XLeft, x+4
 	}
-	p.FillText(style, vg.Point{X: x, Y: min(y, p.Max.Y+3)}, strconv.Itoa(int(h)))
+	p.FillText(style, vg.Point{X: x, Y: min(y, p.Max.Y)}, strconv.Itoa(int(h)))
 }
 
 func (p panel) limitMarks(line report.LimitLine, slot vg.Length) {
@@ -172,7 +176,7 @@ func (p panel) limitMarks(line report.LimitLine, slot vg.Length) {
 		return
 	}
 	for i, h := range line.X {
-		if v := line.Y[i]; v >= p.y.low && v <= p.y.high && h >= p.x.low && h <= p.x.high {
+		if v := value(line.Y, i); v >= p.y.low && v <= p.y.high && h >= p.x.low && h <= p.x.high {
 			x, y := p.x.at(h), p.y.at(v)
 			p.StrokeLine2(solid(Limit, 1.1), x-0.5*slot, y, x+0.5*slot, y)
 		}

@@ -14,6 +14,7 @@ import (
 type Place struct {
 	Start time.Time      // zero when the recording does not say
 	Zone  *time.Location // nil is UTC
+	Bare  bool           // without key and names, where the document gives them for many charts at once
 }
 
 // A Size is how high a chart may be drawn, in points: as a page has room for.
@@ -44,13 +45,16 @@ func SizeOf(ch report.Chart) Size {
 		natural = stackHeight(len(measuredSeries(ch)))
 	case report.WaveformChart, report.TrendChart:
 		natural = stackHeight(len(rowsOf(ch)))
+		if len(ch.Series) > 0 && ch.Series[0].Use == report.Other {
+			natural *= 0.75
+		}
 	case report.HeatMapChart, report.SpectrogramChart:
 		natural = 170
 	case report.PhasorChart:
-		natural = 150
+		natural = 146
 		return Size{natural, natural, natural}
 	}
-	return Size{0.85 * natural, natural, 1.3 * natural}
+	return Size{0.7 * natural, natural, 1.3 * natural}
 }
 
 // stackHeight is the height of panels that stand on each other, each lower the more there are.
@@ -109,14 +113,29 @@ func (p panel) point(x, y float64) vg.Point { return vg.Point{X: p.x.at(x), Y: p
 
 // yTicks are the ticks of the panel's y axis, as many as its height has room for.
 func (p panel) yTicks() []tick {
-	return niceTicks(p.y.low, p.y.high, max(3, int((p.y.to-p.y.from)/15)))
+	return scaleTicks(p.y.low, p.y.high, max(3, int((p.y.to-p.y.from)/15)))
+}
+
+// scaleTicks are nice ticks, but at least two: one alone gives no scale.
+func scaleTicks(low, high float64, most int) []tick {
+	ticks := niceTicks(low, high, most)
+	for extra := 1; len(ticks) < 2 && extra < 6; extra++ {
+		ticks = niceTicks(low, high, most+extra)
+	}
+	return ticks
 }
 
 // axisY draws the y axis: labels on the left, hair lines across.
 func (p panel) axisY(ticks []tick) {
+	const apart = 7.5
+	last := p.Min.Y - 2*apart
 	for _, t := range ticks {
 		y := p.y.at(t.at)
 		p.StrokeLine2(solid(grid, 0.5), p.Min.X, y, p.Max.X, y)
+		if y < last+apart { // a low panel has no room for all labels
+			continue
+		}
+		last = y
 		p.FillText(letters(tickSize, false, Faint, draw.XRight, -0.38), vg.Point{X: p.Min.X - 3, Y: y}, t.label)
 	}
 }

@@ -30,12 +30,13 @@ func drawField(c draw.Canvas, ch report.Chart, at Place) {
 	drawScale(c, r, g, shades)
 }
 
-// cropped leaves out the rows above the last one that has a value: limits often end at order 25 or 40.
+// cropped leaves out the rows above the last one that has a value, for limits often end at order 25 or 40, and makes the
+// ends of the colour scale drawable.
 func cropped(g *report.Grid) *report.Grid {
 	rows := 1
 	for j := range g.Ys {
 		for i := range g.Value {
-			if !math.IsNaN(g.Value[i][j]) {
+			if !math.IsNaN(cellAt(g, i, j)) {
 				rows = j + 1
 				break
 			}
@@ -43,6 +44,10 @@ func cropped(g *report.Grid) *report.Grid {
 	}
 	out := *g
 	out.Ys = g.Ys[:rows]
+	out.Low, out.High = ends(report.Axis{Low: g.Low, High: g.High})
+	if out.Log && out.Low <= 0 {
+		out.Low = out.High / 1e4
+	}
 	return &out
 }
 
@@ -105,11 +110,18 @@ func (p panel) field(g *report.Grid, shades ramp) {
 
 // inkOf is the ink of a cell, -1 where nothing was measured.
 func inkOf(g *report.Grid, shades ramp, i, j int) int {
-	v := g.Value[i][j]
+	v := cellAt(g, i, j)
 	if math.IsNaN(v) || shades.log && v <= 0 {
 		return -1
 	}
 	return shades.index(v)
+}
+
+func cellAt(g *report.Grid, i, j int) float64 {
+	if i < len(g.Value) {
+		return value(g.Value[i], j)
+	}
+	return math.NaN()
 }
 
 // drawScale draws the colour scale right of a field, with its ticks and the mark.

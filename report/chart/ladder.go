@@ -16,10 +16,13 @@ type Rung struct {
 	Result string  // decides the symbol
 }
 
-const rungHeight = 13
+// LadderSize is how high a ladder may be drawn.
+func LadderSize(rungs int) Size {
+	n := vg.Length(rungs)
+	return Size{12*n + ladderEnds, 13*n + ladderEnds, 20*n + ladderEnds}
+}
 
-// LadderHeight is the height of a ladder, in points.
-func LadderHeight(rungs int) vg.Length { return vg.Length(rungs)*rungHeight + 18 }
+const ladderEnds = 20 // the limit's name above and the scale below
 
 // Ladder draws shares of limits on one scale, the limit itself a line across.
 func Ladder(c draw.Canvas, rungs []Rung) {
@@ -33,8 +36,8 @@ func Ladder(c draw.Canvas, rungs []Rung) {
 	}
 	named = min(named, 0.55*(c.Max.X-c.Min.X))
 	x := span{high: high, from: c.Min.X + named + 8, to: c.Max.X - 4}
-	top := c.Max.Y - 10
-	foot := top - vg.Length(len(rungs))*rungHeight
+	top, foot := c.Max.Y-10, c.Min.Y+ladderEnds-10
+	step := (top - foot) / vg.Length(max(1, len(rungs)))
 	for _, t := range niceTicks(0, high, 8) {
 		c.StrokeLine2(solid(grid, 0.5), x.at(t.at), foot, x.at(t.at), top)
 		c.FillText(letters(tickSize, false, Faint, draw.XCenter, draw.YTop), vg.Point{X: x.at(t.at), Y: foot - 1}, t.label+" %")
@@ -42,7 +45,7 @@ func Ladder(c draw.Canvas, rungs []Rung) {
 	c.StrokeLine2(dashed(Limit, 1.1), x.at(100), foot, x.at(100), top+1)
 	c.FillText(letters(tickSize, true, Alarm, draw.XCenter, -0.38), vg.Point{X: x.at(100), Y: top + 5}, "limit")
 	for i, r := range rungs {
-		y := top - (vg.Length(i)+0.5)*rungHeight
+		y := top - (vg.Length(i)+0.5)*step
 		c.FillText(letters(labelSize, false, Ink, draw.XLeft, -0.38), vg.Point{X: c.Min.X, Y: y}, shortened(r.Name, named))
 		rung(c, x, y, r)
 	}

@@ -50,18 +50,22 @@ func drawLines(c draw.Canvas, ch report.Chart, at Place) {
 			weights[i] = 0.45
 		}
 	}
-	top := drawKey(c, axisName(ch.Y), lineKeys(ch))
+	keys, right := lineKeys(ch), labelRoom(ch)
+	if at.Bare {
+		keys, right = nil, 4
+	}
+	top := drawKey(c, axisName(ch.Y), keys)
 	below := vg.Length(belowOneRow)
 	if ch.X.Clock {
 		below = 30
 	}
-	for i, r := range stack(c, top, labelRoom(ch), below, weights) {
+	for i, r := range stack(c, top, right, below, weights) {
 		p := newPanel(c, r, ch.X, rowAxis(ch, rows[i]))
 		p.axisY(p.yTicks())
 		p.shades(ch.Shades)
 		xticks := p.timeTicks(ch, at)
 		p.axisX(xticks, i == len(rows)-1)
-		p.lines(ch, rows[i])
+		p.lines(ch, rows[i], at.Bare)
 		if !rows[i].main {
 			p.FillText(letters(tickSize, false, Faint, draw.XLeft, draw.YTop), vg.Point{X: c.Min.X, Y: p.Max.Y + 3}, rows[i].series[0].Unit)
 		}
@@ -89,7 +93,7 @@ func (p panel) timeTicks(ch report.Chart, at Place) []tick {
 	if ch.X.Clock {
 		return clockTicks(p.x.low, p.x.high, at, room)
 	}
-	return niceTicks(p.x.low, p.x.high, room)
+	return scaleTicks(p.x.low, p.x.high, room)
 }
 
 // rowAxis is the y axis of a row: the chart's own, or one that holds what a lower panel shows.
@@ -108,17 +112,17 @@ func rowAxis(ch report.Chart, r row) report.Axis {
 	return a
 }
 
-// labelRoom is how much space the names at the lines' right ends take.
+// labelRoom is how much space the names at the lines' right ends take; usual names take the same, so that charts under
+// each other have their time axes in line.
 func labelRoom(ch report.Chart) vg.Length {
-	room := vg.Length(0)
-	if len(ch.Limits) > 0 {
-		room = widthOf("limit", tickSize)
-	}
+	room := vg.Length(usualName)
 	for _, s := range ch.Series {
 		room = max(room, widthOf(endName(s), tickSize))
 	}
-	return min(room+22, 110)
+	return min(room+20, 110)
 }
+
+const usualName = 26
 
 func endName(s report.Series) string {
 	switch s.Use {
@@ -138,7 +142,7 @@ func lineKeys(ch report.Chart) []keyItem {
 			break
 		}
 		if i := slices.IndexFunc(ch.Series, func(s report.Series) bool { return s.Use == use }); i >= 0 {
-			items = append(items, lineKey(useNames[use], lineStyle(report.Series{Use: use})))
+			items = append(items, lineKey(useNames[use], lineStyle(report.Series{Use: use}, true)))
 		}
 	}
 	for _, l := range ch.Limits {
@@ -162,17 +166,27 @@ func lineKeys(ch report.Chart) []keyItem {
 var useNames = map[string]string{report.Measured: "as recorded", report.Rebuilt: "rebuilt from the lines above noise",
 	report.Residual: "difference"}
 
-func lineStyle(s report.Series) draw.LineStyle {
+// compared reports whether a row shows one channel as recorded and as rebuilt, one upon the other.
+func (r row) compared() bool {
+	return slices.ContainsFunc(r.series, func(s report.Series) bool { return s.Use == report.Rebuilt })
+}
+
+// lineStyle is how a series is drawn. Where it is compared with what was rebuilt, the recorded line is a broad one
+// without dashes, and the dashes over it are the rebuilt one's.
+func lineStyle(s report.Series, compared bool) draw.LineStyle {
 	l := lookOf(s.Role)
 	switch s.Use {
+	case report.Measured:
+		if compared {
+			return solid(l.ink, 1.7)
+		}
+		return l.line(0.9)
 	case report.Rebuilt:
 		return draw.LineStyle{Color: Ink, Width: 0.5, Dashes: []vg.Length{2.4, 1.6}}
 	case report.Residual:
 		return solid(gray(0x8c), 0.5)
 	case report.Highest:
 		return draw.LineStyle{Color: l.ink, Width: 0.4, Dashes: l.dashes}
-	case report.Measured:
-		return l.line(0.9)
 	}
 	return l.line(0.7)
 }
@@ -193,26 +207,27 @@ func shadeBox(c draw.Canvas, r vg.Rectangle) {
 	c.Fill(rectangle(r))
 }
 
-func (p panel) lines(ch report.Chart, r row) {
+func (p panel) lines(ch report.Chart, r row, bare bool) {
 	p.Push()
 	for _, s := range r.series {
-		p.line(s)
+		p.line(s, lineStyle(s, r.compared()))
 	}
 	var limits []report.LimitLine
-	if r.main {
+	if r.main && len(r.series) > 0 {
 		limits = ch.Limits
 	}
 	for _, l := range limits {
 		p.limitLine(l)
 	}
-	p.endNames(r.series, limits)
+	if !bare {
+		p.endNames(r.series, limits)
+	}
 	p.Pop()
 }
 
 // line draws a series, broken where it has no value.
-func (p panel) line(s report.Series) {
+func (p panel) line(s report.Series, style draw.LineStyle) {
 	var run []vg.Point
-	style := lineStyle(s)
 	end := func() {
 		if len(run) == 1 { // a lone value would leave no trace
 			run = append(run, vg.Point{X: run[0].X + 0.6, Y: run[0].Y})
@@ -223,11 +238,12 @@ func (p panel) line(s report.Series) {
 		run = run[:0]
 	}
 	for i := range s.X {
-		if math.IsNaN(s.X[i]) || math.IsNaN(s.Y[i]) {
+		x, y := s.X[i], value(s.Y, i)
+		if math.IsNaN(x) || math.IsNaN(y) {
 			end()
 			continue
 		}
-		run = append(run, p.point(p.x.clamp(s.X[i]), p.y.clamp(s.Y[i])))
+		run = append(run, p.point(p.x.clamp(x), p.y.clamp(y)))
 	}
 	end()
 }
@@ -270,7 +286,9 @@ func (p panel) limitLine(l report.LimitLine) {
 	}
 	var pts []vg.Point
 	for i := range l.X {
-		pts = append(pts, p.point(p.x.clamp(l.X[i]), p.y.clamp(l.Y[i])))
+		if v := value(l.Y, i); !math.IsNaN(v) {
+			pts = append(pts, p.point(p.x.clamp(l.X[i]), p.y.clamp(v)))
+		}
 	}
 	p.StrokeLines(dashed(Limit, 1), pts)
 }
@@ -288,13 +306,14 @@ func (p panel) endNames(series []report.Series, limits []report.LimitLine) {
 	var ends []ending
 	for _, s := range series {
 		if y, ok := lastValue(s.Y); ok && endName(s) != "" {
-			ends = append(ends, ending{p.y.at(p.y.clamp(y)), endName(s), Ink, lineStyle(s)})
+			ends = append(ends, ending{p.y.at(p.y.clamp(y)), endName(s), Ink, lineStyle(s, false)})
 		}
 	}
 	for _, l := range limits {
 		y, ok := lastValue(l.Y)
-		if same := func(e ending) bool { return e.name == "limit" && e.y == p.y.at(p.y.clamp(y)) }; ok && !slices.ContainsFunc(ends, same) {
-			ends = append(ends, ending{p.y.at(p.y.clamp(y)), "limit", Alarm, dashed(Limit, 1)})
+		e := ending{p.y.at(p.y.clamp(y)), limitName(y, series), Alarm, dashed(Limit, 1)}
+		if same := func(o ending) bool { return o.name == e.name && o.y == e.y }; ok && !slices.ContainsFunc(ends, same) {
+			ends = append(ends, e)
 		}
 	}
 	slices.SortStableFunc(ends, func(a, b ending) int { return cmp.Compare(a.y, b.y) })
@@ -308,6 +327,11 @@ func (p panel) endNames(series []report.Series, limits []report.LimitLine) {
 		p.StrokeLine2(e.line, x, ys[i], x+13, ys[i])
 		p.FillText(letters(tickSize, true, e.ink, draw.XLeft, -0.38), vg.Point{X: x + 16, Y: ys[i]}, shortened(e.name, 92))
 	}
+}
+
+// limitName is a limit's value: what it limits is said in the key.
+func limitName(v float64, series []report.Series) string {
+	return report.Quantity(v, series[0].Unit)
 }
 
 func lastValue(v []float64) (float64, bool) {

@@ -2,6 +2,7 @@ package chart
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/plot/vg"
 	"gonum.org/v1/plot/vg/draw"
@@ -10,16 +11,27 @@ import (
 )
 
 // drawPhasors draws a dial for each unit, voltages and currents apart, each scaled to its longest arrow: 0° points
-// right, angles grow anticlockwise. The numbers stand beside the dials.
+// right, angles grow anticlockwise. The numbers stand in a list beside the dials: an arrow's length is hard to read to
+// a per cent.
 func drawPhasors(c draw.Canvas, ch report.Chart) {
 	dials := dialsOf(ch)
-	width := (c.Max.X - c.Min.X) / vg.Length(max(2, len(dials)))
-	for i, d := range dials {
-		left := c.Min.X + vg.Length(i)*width
-		drawDial(draw.Canvas{Canvas: c.Canvas, Rectangle: vg.Rectangle{
-			Min: vg.Point{X: left, Y: c.Min.Y}, Max: vg.Point{X: left + width, Y: c.Max.Y}}}, d)
+	if len(dials) == 0 {
+		return
 	}
+	r := min((c.Max.Y-c.Min.Y)/2-12, (c.Max.X-c.Min.X-dialList)/vg.Length(2*len(dials))-dialRim)
+	x := c.Min.X
+	for _, d := range dials {
+		drawDial(c, vg.Point{X: x + dialRim, Y: (c.Min.Y + c.Max.Y) / 2}.Add(vg.Point{X: r}), r, d)
+		x += 2 * (r + dialRim)
+	}
+	dialNumbers(c, vg.Point{X: x + 14, Y: (c.Min.Y + c.Max.Y) / 2}, dials)
 }
+
+// dialRim is the room for the degrees around a dial, dialList the list's width.
+const (
+	dialRim  = 19
+	dialList = 106
+)
 
 // dialsOf sorts phasors by unit.
 func dialsOf(ch report.Chart) [][]report.Series {
@@ -40,23 +52,22 @@ next:
 	return dials
 }
 
-func drawDial(c draw.Canvas, d []report.Series) {
+func drawDial(c draw.Canvas, center vg.Point, r vg.Length, d []report.Series) {
 	longest := 0.0
 	for _, s := range d {
 		longest = math.Max(longest, s.Y[0])
 	}
-	if !(longest > 0) {
-		return
-	}
-	r := min((c.Max.Y-c.Min.Y)/2-13, (c.Max.X-c.Min.X-dialList-48)/2)
-	center := vg.Point{X: c.Min.X + r + 14, Y: (c.Min.Y + c.Max.Y) / 2}
 	dialFace(c, center, r)
+	var taken []vg.Point
 	for _, s := range d {
-		if !math.IsNaN(s.X[0]) && !math.IsNaN(s.Y[0]) {
-			arrow(c, center, r*vg.Length(s.Y[0]/longest), s)
+		if !math.IsNaN(s.X[0]) && s.Y[0] > 0 {
+			length := r * vg.Length(s.Y[0]/longest)
+			along := arrow(c, center, length, s)
+			at := freePlace(center, along, length, taken)
+			taken = append(taken, at)
+			c.FillText(letters(tickSize, true, Ink, draw.XCenter, -0.38), at, s.Name)
 		}
 	}
-	dialNumbers(c, vg.Point{X: center.X + r + 20, Y: center.Y}, d)
 }
 
 // dialFace draws the rim, and a cross at every 90°.
@@ -83,8 +94,8 @@ func dialFace(c draw.Canvas, center vg.Point, r vg.Length) {
 	}
 }
 
-// arrow draws one phasor with its name at the tip.
-func arrow(c draw.Canvas, center vg.Point, length vg.Length, s report.Series) {
+// arrow draws one phasor and returns its direction.
+func arrow(c draw.Canvas, center vg.Point, length vg.Length, s report.Series) vg.Point {
 	sin, cos := math.Sincos(s.X[0] * math.Pi / 180)
 	along := vg.Point{X: vg.Length(cos), Y: vg.Length(sin)}
 	across := vg.Point{X: -along.Y, Y: along.X}
@@ -99,20 +110,41 @@ func arrow(c draw.Canvas, center vg.Point, length vg.Length, s report.Series) {
 	head.Close()
 	c.SetColor(l.ink)
 	c.Fill(head)
-	c.FillText(letters(tickSize, true, Ink, draw.XCenter, -0.38), center.Add(along.Scale(max(8, length-14))).Add(across.Scale(7)), s.Name)
+	return along
 }
 
-// dialList is the width of the list beside a dial.
-const dialList = 80
+// freePlace finds where an arrow's name stands clear of those before: beside the arrow near its tip, on the other side,
+// or nearer to the centre.
+func freePlace(center, along vg.Point, length vg.Length, taken []vg.Point) vg.Point {
+	across := vg.Point{X: -along.Y, Y: along.X}
+	var place vg.Point
+	for _, back := range []vg.Length{14, 24, 34, 44} {
+		for _, side := range []vg.Length{7, -7} {
+			place = center.Add(along.Scale(max(8, length-back))).Add(across.Scale(side))
+			if !slices.ContainsFunc(taken, func(t vg.Point) bool {
+				return math.Abs(float64(t.X-place.X)) < 14 && math.Abs(float64(t.Y-place.Y)) < 8
+			}) {
+				return place
+			}
+		}
+	}
+	return place
+}
 
-// dialNumbers lists the phasors: an arrow's length is hard to read to a per cent.
-func dialNumbers(c draw.Canvas, at vg.Point, d []report.Series) {
-	const step = 10
-	y := at.Y + step*vg.Length(len(d)-1)/2
-	for _, s := range d {
-		c.FillText(letters(labelSize, true, Ink, draw.XLeft, -0.38), vg.Point{X: at.X, Y: y}, s.Name)
-		c.FillText(letters(labelSize, false, Ink, draw.XRight, -0.38), vg.Point{X: at.X + 46, Y: y}, report.Quantity(s.Y[0], s.Unit))
-		c.FillText(letters(labelSize, false, Ink, draw.XRight, -0.38), vg.Point{X: at.X + dialList, Y: y}, fixed(s.X[0], 1)+"°")
+func dialNumbers(c draw.Canvas, at vg.Point, dials [][]report.Series) {
+	const step = 10.5
+	rows := len(dials) - 1 // a gap between the lists
+	for _, d := range dials {
+		rows += len(d)
+	}
+	y := at.Y + step*vg.Length(rows-1)/2
+	for _, d := range dials {
+		for _, s := range d {
+			c.FillText(letters(labelSize, true, Ink, draw.XLeft, -0.38), vg.Point{X: at.X, Y: y}, s.Name)
+			c.FillText(letters(labelSize, false, Ink, draw.XRight, -0.38), vg.Point{X: at.X + 52, Y: y}, report.Quantity(s.Y[0], s.Unit))
+			c.FillText(letters(labelSize, false, Ink, draw.XRight, -0.38), vg.Point{X: at.X + dialList - 16, Y: y}, fixed(s.X[0], 1)+"°")
+			y -= step
+		}
 		y -= step
 	}
 }

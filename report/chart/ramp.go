@@ -73,19 +73,3 @@ func mix(ramp []color.NRGBA, share float64) color.NRGBA {
 	a, b := ramp[i], ramp[i+1]
 	return color.NRGBA{blend(a.R, b.R), blend(a.G, b.G), blend(a.B, b.B), 0xff}
 }
-
-// lightness is CIE L* of an ink, 0 to 100 (CIE 15: relative luminance of sRGB, then the cube-root law).
-func lightness(c color.NRGBA) float64 {
-	linear := func(v uint8) float64 {
-		s := float64(v) / 255
-		if s <= 0.04045 {
-			return s / 12.92
-		}
-		return math.Pow((s+0.055)/1.055, 2.4)
-	}
-	y := 0.2126*linear(c.R) + 0.7152*linear(c.G) + 0.0722*linear(c.B)
-	if y <= 216.0/24389 {
-		return y * 24389 / 27
-	}
-	return 116*math.Cbrt(y) - 16
-}

@@ -119,9 +119,9 @@ func siteName(s *report.Survey) string {
 		return name
 	}
 	if len(s.Recording.Files) > 0 {
-		return "unnamed site, " + s.Recording.Files[0].Name
+		return "Unnamed site, " + s.Recording.Files[0].Name
 	}
-	return "unnamed site"
+	return "Unnamed site"
 }
 
 // mainX and main are the main column, full the whole width between the margins.

@@ -1,6 +1,8 @@
 package pdf
 
 import (
+	"image/color"
+
 	"wavetally/report"
 	"wavetally/report/chart"
 )
@@ -37,24 +39,50 @@ func (d *document) section(title string) block {
 	return b
 }
 
+// mostLines is how many lines of a paragraph stay together; a longer one may go on on the next page.
+const mostLines = 14
+
 // item is a paragraph in the main column with a label beside it and small print below it.
-func (d *document) item(label, text, small string, gap float64) block {
+func (d *document) item(label, text, small string, gap float64) []block {
 	m := d.pen.measure
-	side := wrap(m, sideHead, label, d.side)
-	lines := wrap(m, textFace, text, d.main())
-	var fine []string
+	out := d.paragraph(label, wrap(m, textFace, text, d.main()), textFace, gap)
 	if small != "" {
-		fine = wrap(m, sideFace, small, d.main())
+		out[len(out)-1].keep = true
+		fine := d.paragraph("", wrap(m, sideFace, small, d.main()), sideFace, 2)
+		out = append(out, fine...)
 	}
-	body := textHeight(textFace, len(lines))
-	height := body
-	if fine != nil {
-		height += 2 + textHeight(sideFace, len(fine))
+	return out
+}
+
+// paragraph sets lines in the main column, in as many blocks as it takes, the label beside the first.
+func (d *document) paragraph(label string, lines []string, f face, gap float64) []block {
+	var out []block
+	side := wrap(d.pen.measure, sideHead, label, d.side)
+	for first := 0; first < len(lines); first += mostLines {
+		piece := lines[first:min(first+mostLines, len(lines))]
+		height := float64(len(piece)) * f.leading()
+		if first+mostLines >= len(lines) {
+			height = textHeight(f, len(piece))
+		}
+		if first == 0 {
+			height = max(height, textHeight(sideHead, len(side)))
+		}
+		labelled := first == 0
+		out = append(out, fixedBlock(gap, height, func(y, h float64) {
+			if labelled {
+				d.pen.lines(sideHead, chart.Ink, d.left, y+(f.size-sideHead.size)*0.6, side)
+			}
+			d.pen.lines(f, inkOf(f), d.mainX(), y, piece)
+		}))
+		gap = 0
 	}
-	height = max(height, textHeight(sideHead, len(side)))
-	return fixedBlock(gap, height, func(y, h float64) {
-		d.pen.lines(sideHead, chart.Ink, d.left, y+0.5, side)
-		d.pen.lines(textFace, chart.Ink, d.mainX(), y, lines)
-		d.pen.lines(sideFace, chart.Faint, d.mainX(), y+body+2, fine)
-	})
+	return out
+}
+
+// inkOf sets small print back.
+func inkOf(f face) color.NRGBA {
+	if f == sideFace {
+		return chart.Faint
+	}
+	return chart.Ink
 }

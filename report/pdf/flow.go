@@ -5,7 +5,7 @@ type block struct {
 	gap                  float64 // above it, dropped at the top of a page
 	least, natural, most float64 // height
 	keep                 bool    // on the same page as the next block
-	fresh                bool    // begins a page
+	fresh                float64 // begins a page when the one before is filled to at least this share; 0: never
 	head                 *block  // set again above this block when it begins a page: a table's header
 	outline              string  // entry in the outline, "" for none
 	draw                 func(y, h float64)
@@ -22,33 +22,38 @@ type placed struct {
 	y, h float64
 }
 
-// compose divides blocks over pages from top to bottom. A page takes blocks as long as they fit at their least height;
-// then its elastic blocks share what room there is. So a page is left part empty only where the next block is neither
-// elastic nor divisible, or the document ends.
+// hole is the share of a page that may stay empty before elastic blocks are squeezed to take in one more.
+const hole = 0.12
+
+// compose divides blocks over pages from top to bottom. A page takes blocks as long as they fit; where the next would
+// leave a hole, it is taken in if elastic blocks can make room. Then they share what room there is. So a page is left
+// part empty only where the next block is neither elastic nor divisible, or the document ends.
 func compose(blocks []block, top, bottom float64) [][]placed {
 	var pages [][]placed
 	var page []block
-	used := 0.0
+	room := bottom - top
+	least, natural := 0.0, 0.0
 	flush := func(full bool) {
 		if len(page) > 0 {
 			pages = append(pages, settle(page, top, bottom, full))
 		}
-		page, used = nil, 0
+		page, least, natural = nil, 0, 0
 	}
 	for i := 0; i < len(blocks); {
 		n := chain(blocks[i:])
 		group := blocks[i : i+n]
 		i += n
-		if group[0].fresh {
-			flush(false)
-		}
-		if used > 0 && used+leastHeight(group, false) > bottom-top {
+		addLeast, addNatural := heights(group, len(page) == 0)
+		breaks := natural+addNatural > room && (room-natural < hole*room || least+addLeast > room)
+		fresh := group[0].fresh > 0 && natural > group[0].fresh*room
+		if len(page) > 0 && (breaks || fresh) {
 			flush(true)
 		}
 		if len(page) == 0 && group[0].head != nil {
 			group = append([]block{*group[0].head}, group...)
 		}
-		used += leastHeight(group, len(page) == 0)
+		addLeast, addNatural = heights(group, len(page) == 0)
+		least, natural = least+addLeast, natural+addNatural
 		page = append(page, group...)
 	}
 	flush(false)
@@ -64,15 +69,15 @@ func chain(blocks []block) int {
 	return n
 }
 
-func leastHeight(group []block, first bool) float64 {
-	sum := 0.0
+// heights sums up a group, without the gap above it where it begins a page.
+func heights(group []block, first bool) (least, natural float64) {
 	for i, b := range group {
 		if i > 0 || !first {
-			sum += b.gap
+			least, natural = least+b.gap, natural+b.gap
 		}
-		sum += b.least
+		least, natural = least+b.least, natural+b.natural
 	}
-	return sum
+	return least, natural
 }
 
 // settle gives the blocks of a page their places. A page that others follow is filled by letting elastic blocks grow;

@@ -2,10 +2,12 @@ package pdf
 
 import (
 	"fmt"
+	"slices"
 	"strconv"
 	"strings"
 
 	"wavetally/harmonics/limits"
+	"wavetally/harmonics/site"
 	"wavetally/report"
 	"wavetally/report/chart"
 )
@@ -18,19 +20,53 @@ func (d *document) opening() []block {
 	out = append(out, d.sentences("Against the limits", h.Answers)...)
 	out = append(out, d.ladder()...)
 	if h.Fitness != "" {
-		out = append(out, d.item("The record", h.Fitness, "", 10))
+		out = append(out, d.item("The record", h.Fitness, "", 10)...)
 	}
 	for i, n := range h.Next {
 		label, gap := "", 4.0
 		if i == 0 {
 			label, gap = "What next", 10
 		}
-		out = append(out, d.item(label, strconv.Itoa(i+1)+".  "+n, "", gap))
+		out = append(out, d.item(label, strconv.Itoa(i+1)+".  "+n, "", gap)...)
 	}
-	if len(h.Not) > 0 {
-		out = append(out, d.small("Not examined", strings.Join(h.Not, " "), 10))
+	out = append(out, d.small("Not examined", h.Not, 10)...)
+	out = append(out, d.small("Safety", []string{report.SafetyShort}, 8)...)
+	return append(out, d.keyFigure(out)...)
+}
+
+// keyFigure is the chart that shows the answer best, if the first page has room for it. It is then not shown again.
+func (d *document) keyFigure(above []block) []block {
+	i := slices.IndexFunc(d.charts, func(c report.Chart) bool { return c.Key == d.keyChart() })
+	if i < 0 {
+		return nil
 	}
-	return append(out, d.small("Safety", report.SafetyShort, 8))
+	figure := d.figure(d.charts[i])
+	_, used := heights(append(above, figure), true)
+	if used > d.pen.height-topMargin-bottomMargin {
+		return nil
+	}
+	d.charts = slices.Delete(d.charts, i, i+1)
+	figure.most *= 1.7 // it may take what is left of the page
+	return []block{figure}
+}
+
+// keyChart is the spectrum of what is nearest to its limit, or farthest beyond; without limits that of the currents.
+func (d *document) keyChart() string {
+	worst, key := -1.0, ""
+	for _, f := range d.s.Findings {
+		if kind := kindOf(f); kind != "" && f.Order > 0 && float64(f.Share) > worst {
+			worst, key = float64(f.Share), "spectrum-"+kind+"-"+f.RuleSet
+		}
+	}
+	if key != "" {
+		return key
+	}
+	for _, c := range d.charts {
+		if c.Key == "spectrum-I" || key == "" && c.Kind == report.SpectrumChart {
+			key = c.Key
+		}
+	}
+	return key
 }
 
 func (d *document) sentences(label string, texts []string) []block {
@@ -42,47 +78,69 @@ func (d *document) sentences(label string, texts []string) []block {
 		} else {
 			label = ""
 		}
-		out = append(out, d.item(label, t, "", gap))
+		out = append(out, d.item(label, t, "", gap)...)
 	}
 	return out
 }
 
-// title names the site and says when and by whom it was recorded.
+// title names the site and says when and by whom it was recorded. What is too long to be a title is cut here, and
+// stands in full among the site's data.
 func (d *document) title() block {
 	m := d.pen.measure
 	f := titleFace
-	lines := wrap(m, f, siteName(d.s), d.full())
-	if len(lines) > 2 {
-		f.size = 14
-		lines = wrap(m, f, siteName(d.s), d.full())
+	name := wrap(m, f, siteName(d.s), d.full())
+	for _, size := range []float64{14, 10} {
+		if len(name) > 2 {
+			f.size = size
+			name = wrap(m, f, siteName(d.s), d.full())
+		}
 	}
-	facts := wrap(m, tableFace, strings.Join(d.facts(), " · "), d.full())
-	name := textHeight(f, len(lines))
+	name = cut(name, 4)
+	var facts []string
+	for _, t := range d.facts() {
+		facts = append(facts, cut(wrap(m, tableFace, strings.Join(t, " · "), d.full()), 3)...)
+	}
+	high := textHeight(f, len(name))
 	const above = 16.0
-	return fixedBlock(0, above+name+5+textHeight(tableFace, len(facts)), func(y, h float64) {
+	return fixedBlock(0, above+high+5+textHeight(tableFace, len(facts)), func(y, h float64) {
 		d.pen.text(headFace, chart.Faint, d.left, y+6, "Harmonic survey")
-		d.pen.lines(f, chart.Ink, d.left, y+above, lines)
-		d.pen.lines(tableFace, chart.Faint, d.left, y+above+name+5, facts)
+		d.pen.lines(f, chart.Ink, d.left, y+above, name)
+		d.pen.lines(tableFace, chart.Faint, d.left, y+above+high+5, facts)
 	})
 }
 
-func (d *document) facts() []string {
+// cut keeps the first lines, ending in an ellipsis where some were left out.
+func cut(lines []string, most int) []string {
+	if len(lines) <= most {
+		return lines
+	}
+	lines = slices.Clone(lines[:most])
+	last := []rune(lines[most-1])
+	lines[most-1] = string(last[:max(0, len(last)-2)]) + "…"
+	return lines
+}
+
+// facts are what stands under the site's name: where and why, then when and by whom.
+func (d *document) facts() [][]string {
 	id, r := d.s.Site.Site, d.s.Recording
-	var out []string
+	var where []string
 	for _, f := range []string{id.Location, id.Purpose} {
 		if f != "" {
-			out = append(out, f)
+			where = append(where, f)
 		}
 	}
-	span := "recorded over " + report.Duration(float64(r.Duration))
+	when := "recorded over " + report.Duration(float64(r.Duration))
 	if r.Start != nil {
-		span += " from " + r.Clock(0)
+		when += " from " + r.Clock(0)
 	}
-	out = append(out, span)
+	who := []string{when}
 	if id.SurveyedBy != "" {
-		out = append(out, "surveyed by "+id.SurveyedBy)
+		who = append(who, "surveyed by "+id.SurveyedBy)
 	}
-	return out
+	if len(where) == 0 {
+		return [][]string{who}
+	}
+	return [][]string{where, who}
 }
 
 // verdictWords say the verdict in a few words.
@@ -135,16 +193,30 @@ func (d *document) ladder() []block {
 	if len(rungs) == 0 {
 		return nil
 	}
-	height := float64(chart.LadderHeight(len(rungs)))
-	caption := "Highest share of a limit, for each rule set."
-	lines := wrap(d.pen.measure, sideFace, caption, d.side)
-	b := fixedBlock(12, height, func(y, h float64) {
-		d.pen.lines(sideFace, chart.Faint, d.left, y+1, lines)
-		v, done := d.pen.vectors(d.mainX(), y, d.main(), h)
-		chart.Ladder(v, rungs)
-		done()
-	})
-	return []block{b}
+	size := chart.LadderSize(len(rungs))
+	lines := wrap(d.pen.measure, sideFace, "Highest share of a limit, for each rule set.", d.side)
+	return []block{{
+		gap: 12, least: float64(size.Least), natural: float64(size.Natural), most: float64(size.Most),
+		draw: func(y, h float64) {
+			d.pen.lines(sideFace, chart.Faint, d.left, y+1, lines)
+			v, done := d.pen.vectors(d.mainX(), y, d.main(), h)
+			chart.Ladder(v, rungs)
+			done()
+		},
+	}}
+}
+
+// kindOf is "V" or "I" for a finding on a phase, as charts are keyed; "" for the neutral.
+func kindOf(f report.Finding) string {
+	switch role := site.Role(f.Channel); {
+	case role.Neutral():
+		return ""
+	case role.Voltage():
+		return "V"
+	case role.Current():
+		return "I"
+	}
+	return ""
 }
 
 // mostRungs keeps the ladder to what a first page has room for.
@@ -157,8 +229,7 @@ func (d *document) rungs() []chart.Rung {
 		if !f.Share.Known() {
 			continue
 		}
-		kind := map[bool]string{true: "V", false: "I"}[strings.HasPrefix(f.Channel, "V")]
-		key := fmt.Sprint(f.RuleSet, kind, f.Order > 0)
+		key := fmt.Sprint(f.RuleSet, kindOf(f), f.Order > 0)
 		rung := chart.Rung{Name: report.QuantityName(f.Quantity, f.Order) + " on " + f.Channel + ", " + report.RuleTitle(f.RuleSet), Share: float64(f.Share), Result: f.Result}
 		i, seen := at[key]
 		if !seen {
@@ -171,16 +242,12 @@ func (d *document) rungs() []chart.Rung {
 	return out[:min(len(out), mostRungs)]
 }
 
-// small is a paragraph in small print.
-func (d *document) small(label, text string, gap float64) block {
-	m := d.pen.measure
-	side := wrap(m, sideHead, label, d.side)
-	lines := wrap(m, tableFace, text, d.main())
-	height := max(textHeight(tableFace, len(lines)), textHeight(sideHead, len(side)))
-	return fixedBlock(gap, height, func(y, h float64) {
-		d.pen.lines(sideHead, chart.Ink, d.left, y, side)
-		d.pen.lines(tableFace, chart.Ink, d.mainX(), y+0.8, lines)
-	})
+// small are paragraphs in small print.
+func (d *document) small(label string, texts []string, gap float64) []block {
+	var out []block
+	for _, text := range texts {
+		out = append(out, d.paragraph(label, wrap(d.pen.measure, tableFace, text, d.main()), tableFace, gap)...)
+		label, gap = "", 1
+	}
+	return out
 }
-
-func itoa(n int) string { return strconv.Itoa(n) }

@@ -24,6 +24,7 @@ var (
 	tableFace   = face{false, 7.8}
 	tableStrong = face{true, 7.8}
 	cellHead    = face{true, 7.4}
+	cautionFace = face{false, 8.2}
 	tinyFace    = face{false, 6.8}
 )
 

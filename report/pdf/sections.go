@@ -1,6 +1,7 @@
 package pdf
 
 import (
+	"strconv"
 	"strings"
 
 	"wavetally/report"
@@ -16,7 +17,9 @@ func (d *document) blocks() []block {
 	d.charts = report.Charts(d.s)
 	var out []block
 	out = append(out, d.opening()...)
-	out = append(out, d.part("Site and recording", d.listed("site"), d.set("hook-up"), d.listed("recording"))...)
+	site := d.part("Site and recording", d.listed("site"), d.set("hook-up"), d.listed("recording"))
+	site[0].fresh = 0.6 // the answers stand alone, unless they are few
+	out = append(out, site...)
 	out = append(out, d.part("Verdicts", d.verdicts(), d.set("open"), d.set("noise"))...)
 	out = append(out, d.part("Spectrum", d.figures(report.SpectrumChart, ""))...)
 	out = append(out, d.part("Waveform", d.figures(report.WaveformChart, "waveform-"), d.rebuilt())...)
@@ -69,45 +72,54 @@ func (d *document) listed(key string) []block {
 		if i == 0 {
 			out = append(out, d.tableTitle(t.Title, d.mainX(), d.main(), nil))
 		}
-		b := d.pair(row)
-		b.keep = i == 0 && len(t.Rows) > 1
-		out = append(out, b)
+		pair := d.pair(row)
+		pair[0].keep = i == 0 && len(t.Rows) > 1
+		out = append(out, pair...)
 	}
 	return out
 }
 
-// pair is a name, its value, and a remark.
-func (d *document) pair(row []report.Cell) block {
+// pair is a name, its value, and a remark: on the value's line where it has room, else below it.
+func (d *document) pair(row []report.Cell) []block {
 	m := d.pen.measure
 	const nameWidth = 120.0
-	x := d.mainX()
-	room := d.main() - nameWidth
+	x, valueX, room := d.mainX(), d.mainX()+nameWidth, d.main()-nameWidth
 	name := wrap(m, tableFace, row[0].Text, nameWidth-8)
 	value := wrap(m, tableStrong, row[1].Text, room)
-	var remark []string
-	remarkX, sameLine := x+nameWidth, false
-	if row[2].Text != "" {
-		used := m(tableStrong, value[len(value)-1]) + 8
-		if sameLine = len(value) == 1 && used+m(sideFace, clean(row[2].Text)) <= room; sameLine {
-			remarkX += used
-		}
-		remark = wrap(m, sideFace, row[2].Text, d.mainX()+d.main()-remarkX)
+	remarkX, beside := valueX, false
+	if used := m(tableStrong, value[0]) + 8; len(value) == 1 && used+m(sideFace, clean(row[2].Text)) <= room {
+		remarkX, beside = valueX+used, true
 	}
-	lines := max(len(name), len(value))
-	height := textHeight(tableFace, lines)
-	if remark != nil && !sameLine {
-		height = max(height, textHeight(tableFace, len(value))+textHeight(sideFace, len(remark)))
-	}
-	return fixedBlock(0, height+2*pairPad, func(y, h float64) {
-		d.pen.lines(tableFace, chart.Faint, x, y+pairPad, name)
-		d.pen.lines(tableStrong, chart.Ink, x+nameWidth, y+pairPad, value)
-		at := y + pairPad
-		if !sameLine {
-			at += textHeight(tableFace, len(value))
+	var out []block
+	for first := 0; first < len(value); first += mostLines {
+		piece := value[first:min(first+mostLines, len(value))]
+		last := first+mostLines >= len(value)
+		var names, remark []string
+		if first == 0 {
+			names = name
 		}
-		d.pen.lines(sideFace, chart.Faint, remarkX, at, remark)
-		d.pen.rule(chart.Hair, 0.4, x, x+d.main(), y+h)
-	})
+		if last && row[2].Text != "" {
+			remark = wrap(m, sideFace, row[2].Text, d.rightX()-remarkX)
+		}
+		height := textHeight(tableFace, len(piece))
+		below := height
+		if beside {
+			below = 0
+		} else if remark != nil {
+			height += textHeight(sideFace, len(remark))
+		}
+		height = max(height, textHeight(tableFace, len(names))) + 2*pairPad
+		out = append(out, fixedBlock(0, height, func(y, h float64) {
+			y += pairPad
+			d.pen.lines(tableFace, chart.Faint, x, y, names)
+			d.pen.lines(tableStrong, chart.Ink, valueX, y, piece)
+			d.pen.lines(sideFace, chart.Faint, remarkX, y+below, remark)
+			if last {
+				d.pen.rule(chart.Hair, 0.4, x, d.rightX(), y-pairPad+h)
+			}
+		}))
+	}
+	return out
 }
 
 const pairPad = 1.9
@@ -120,7 +132,7 @@ func (d *document) method() []block {
 		if m.Source != "" {
 			source = "After: " + m.Source
 		}
-		out = append(out, d.item(m.Topic, m.Text, source, 8))
+		out = append(out, d.item(m.Topic, m.Text, source, 8)...)
 	}
 	if len(out) > 0 {
 		out = append(out, d.note(report.MethodNote, d.mainX(), d.main()))
@@ -138,7 +150,7 @@ func (d *document) plant() []block {
 		if p.Topic != topic {
 			label, topic = upperFirst(p.Topic), p.Topic
 		}
-		out = append(out, d.item(label, p.Name+": "+report.Quantity(float64(p.Value), p.Unit), p.Text, 7))
+		out = append(out, d.item(label, p.Name+": "+report.Quantity(float64(p.Value), p.Unit), p.Text, 7)...)
 	}
 	if len(out) > 0 {
 		out = append([]block{d.note("Screening, not design: a qualified engineer designs any change.", d.mainX(), d.main())}, out...)
@@ -159,7 +171,7 @@ func (d *document) doubts() []block {
 		if i < len(rows) && rows[i][4].Text != "" {
 			small += ": " + rows[i][4].Text
 		}
-		out = append(out, d.item(upperFirst(doubt.Weight)+", "+where, doubt.Text, small, 8))
+		out = append(out, d.item(upperFirst(doubt.Weight)+", "+where, doubt.Text, small, 8)...)
 		if len(doubt.Proposal) > 0 {
 			out[len(out)-1].keep = true
 			out = append(out, d.proposal(doubt.Proposal))
@@ -184,17 +196,31 @@ func (d *document) proposal(proposed []string) block {
 	})
 }
 
+// cautions are set in two columns, so that they and the signatures mostly share a page.
 func (d *document) cautions() []block {
+	const number = 14.0
+	f := cautionFace
+	width := (d.full() - 2*gutter) / 2
+	half := (len(d.s.Cautions) + 1) / 2
 	var out []block
-	for i, c := range d.s.Cautions {
-		b := d.item("", c, "", 5)
-		number := i + 1
-		inner := b.draw
-		b.draw = func(y, h float64) {
-			d.pen.right(strongFace, chart.Faint, d.mainX()-8, y+textFace.size*0.93, itoa(number))
-			inner(y, h)
+	for i := range half {
+		var sets [2][]string
+		height := 0.0
+		for c, k := range []int{i, i + half} {
+			if k < len(d.s.Cautions) {
+				sets[c] = wrap(d.pen.measure, f, d.s.Cautions[k], width-number)
+				height = max(height, textHeight(f, len(sets[c])))
+			}
 		}
-		out = append(out, b)
+		out = append(out, fixedBlock(5, height, func(y, h float64) {
+			for c, lines := range sets {
+				if lines != nil {
+					x := d.left + float64(c)*(width+2*gutter)
+					d.pen.lines(face{true, f.size}, chart.Faint, x, y, []string{strconv.Itoa(i + c*half + 1)})
+					d.pen.lines(f, chart.Ink, x+number, y, lines)
+				}
+			}
+		}))
 	}
 	return out
 }

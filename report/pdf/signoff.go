@@ -5,15 +5,15 @@ import "wavetally/report/chart"
 // signOff is where two people put their names to the survey.
 func (d *document) signOff() []block {
 	intro := "The signatures confirm that the hook-up, the declared data and the doubts above were checked. The verdicts hold for the recorded period, state and point only."
-	b := d.item("", intro, "", 6)
-	b.keep = true
-	const height, rowHeight = 128.0, 26.0
+	out := d.item("", intro, "", 6)
+	out[len(out)-1].keep = true
+	const height, rowHeight = 108.0, 23.0
 	lines := fixedBlock(10, height, func(y, h float64) {
 		width := (d.full() - 2*gutter) / 2
 		d.signer(d.left, y, width, rowHeight, "Surveyed by", d.s.Site.Site.SurveyedBy)
 		d.signer(d.left+width+2*gutter, y, width, rowHeight, "Reviewed by responsible engineer", "")
 	})
-	return []block{b, lines}
+	return append(out, lines)
 }
 
 // signer is one column of lines to sign on.

@@ -1,6 +1,7 @@
 package pdf
 
 import (
+	"wavetally/harmonics/limits"
 	"wavetally/report"
 	"wavetally/report/chart"
 )
@@ -8,180 +9,82 @@ import (
 // Measures of tables, in points.
 const (
 	cellGap   = 9.0 // between columns
-	rowPad    = 2.6 // above and below a row's text
-	narrowest = 46  // a column of wrapped text
+	loosePad  = 2.3 // above and below a row's text
+	densePad  = 1.2 // the same in a long table of numbers
 	markSize  = 6.2 // a verdict's symbol
 	markRoom  = 9.5
+	tableGap  = 14.0
+	longTable = 24 // rows from which a table of numbers is set densely, and a narrow one folded
+	firstRows = 6  // rows of such a table that stay with its head: a page should not end in a stub
 )
 
-// A grid is a table laid out: widths of its columns and the face they fit in.
-type grid struct {
-	t      report.Table
-	face   face
-	head   face
-	widths []float64
-}
-
-// layOut finds the largest face of three in which the table fits a width without wrapping what is not meant to wrap;
-// text columns give way first, and if nothing else helps, every column does.
-func (d *document) layOut(t report.Table, room float64) grid {
-	var g grid
-	for _, size := range []float64{7.8, 7.2, 6.6} {
-		g = grid{t: t, face: face{false, size}, head: face{true, size}}
-		g.widths = make([]float64, len(t.Columns))
-		for i := range t.Columns {
-			g.widths[i] = d.columnWidth(g, i)
-		}
-		if g.squeeze(d, room) {
-			return g
-		}
-	}
-	g.force(room)
-	return g
-}
-
-// columnWidth is what a column would take unwrapped.
-func (d *document) columnWidth(g grid, i int) float64 {
-	w := d.headWidth(g, i)
-	for _, row := range g.t.Rows {
-		cw := d.pen.measure(g.face, clean(row[i].Text))
-		if row[i].Result != "" {
-			cw += markRoom
-		}
-		w = max(w, cw)
-	}
-	return w
-}
-
-// headWidth is the width of a column's head, its unit on a line of its own.
-func (d *document) headWidth(g grid, i int) float64 {
-	w := 0.0
-	for _, line := range headLines(g.t.Columns[i]) {
-		w = max(w, d.pen.measure(g.head, clean(line)))
-	}
-	return w
-}
-
-func headLines(c report.Column) []string {
-	if c.Unit == "" {
-		return []string{c.Head}
-	}
-	return []string{c.Head, c.Unit}
-}
-
-func (g *grid) total() float64 {
-	sum := cellGap * float64(len(g.widths)-1)
-	for _, w := range g.widths {
-		sum += w
-	}
-	return sum
-}
-
-// squeeze narrows the columns that may wrap until the table fits, the widest first, and reports whether it does.
-func (g *grid) squeeze(d *document, room float64) bool {
-	over := g.total() - room
-	for over > 0 {
-		widest, next := -1, 0.0
-		for i, c := range g.t.Columns {
-			if !c.Wide || g.widths[i] <= narrowest {
-				continue
-			}
-			switch {
-			case widest < 0 || g.widths[i] > g.widths[widest]:
-				if widest >= 0 {
-					next = g.widths[widest]
-				}
-				widest = i
-			default:
-				next = max(next, g.widths[i])
-			}
-		}
-		if widest < 0 {
-			return false
-		}
-		cut := min(over, max(1, g.widths[widest]-max(next, narrowest)))
-		g.widths[widest] -= cut
-		over -= cut
-	}
-	return true
-}
-
-// force scales what is left so that the table fits; cells then wrap wherever they must.
-func (g *grid) force(room float64) {
-	space := room - cellGap*float64(len(g.widths)-1)
-	sum := g.total() - cellGap*float64(len(g.widths)-1)
-	for i := range g.widths {
-		g.widths[i] *= space / sum
-	}
-}
-
-// table makes the blocks of a table: title, header, rows, notes. Rows may go to another page, under the header again.
+// table makes the blocks of a table: title, head, rows, notes. Rows may go to another page, under the head again. A
+// table too wide for the page is set in parts, each with the first column; a long narrow one is folded into two.
 func (d *document) table(t report.Table) []block {
 	if len(t.Rows) == 0 {
 		return nil
 	}
-	g := d.layOut(t, d.full())
+	parts := d.layOut(t, d.full())
 	x, room := d.left, d.full()
-	if g.total() <= d.main() {
+	if len(parts) == 1 && parts[0].total() <= d.main() && !parts[0].folds(d.full()) {
 		x, room = d.mainX(), d.main()
 	}
-	g.widen(room)
-	var out []block
-	side := t.Notes
+	beside, below := t.Notes, []string(nil)
 	if x == d.left {
-		side = nil
+		beside, below = nil, t.Notes
 	}
-	out = append(out, d.tableTitle(t.Title, x, room, side))
-	head := d.headBlock(g, x)
-	out = append(out, head)
-	for i, row := range t.Rows {
-		b := d.rowBlock(g, x, row)
-		b.head = &head
-		// Neither the first nor the last row stands alone on a page.
-		b.keep = i == 0 && len(t.Rows) > 1 || i == len(t.Rows)-2
-		out = append(out, b)
-	}
-	if x == d.left {
-		for _, n := range t.Notes {
-			out[len(out)-1].keep = true
-			out = append(out, d.note(n, x, room))
+	out := []block{d.tableTitle(t.Title, x, room, beside)}
+	for i, g := range parts {
+		rows := d.gridBlocks(g, x, room)
+		if i > 0 {
+			rows[0].gap = tableGap
 		}
+		out = append(out, rows...)
+	}
+	for _, n := range below {
+		out[len(out)-1].keep = true
+		out = append(out, d.note(n, x, room))
 	}
 	return out
 }
 
-// widen spreads a table that nearly fills its room over all of it, so that tables above each other end alike.
-func (g *grid) widen(room float64) {
-	spare := room - g.total()
-	if spare <= 0 {
-		return
+// gridBlocks are the head and the rows of one part of a table.
+func (d *document) gridBlocks(g grid, x, room float64) []block {
+	strips := []float64{x}
+	rows := len(g.t.Rows)
+	if g.folds(room) {
+		strips = append(strips, 0)
+		rows = (rows + 1) / 2
+		g.spread((room-2*gutter)/2-g.total(), 0)
+		strips[1] = x + room - g.total()
+	} else {
+		g.widen(room)
 	}
-	wide := 0
-	for _, c := range g.t.Columns {
-		if c.Wide {
-			wide++
+	first := 2
+	if g.dense() {
+		first = firstRows
+	}
+	head := d.headBlock(g, strips)
+	out := []block{head}
+	for i := range rows {
+		row := d.rowBlocks(g, strips, i, rows)
+		for k := range row {
+			row[k].head = &head
 		}
+		row[len(row)-1].keep = i < min(first, rows)-1 || i == rows-2 // the last row never stands alone either
+		out = append(out, row...)
 	}
-	if wide == 0 && spare > 0.35*room {
-		return
-	}
-	for i, c := range g.t.Columns {
-		switch {
-		case wide > 0 && c.Wide:
-			g.widths[i] += spare / float64(wide)
-		case wide == 0 && i < len(g.widths)-1:
-			g.widths[i] += spare / float64(len(g.widths)-1)
-		}
-	}
+	return out
 }
 
+// tableTitle is a table's title, with its notes beside it where the table leaves the side column free.
 func (d *document) tableTitle(title string, x, room float64, side []string) block {
 	lines := wrap(d.pen.measure, headFace, title, room)
 	var notes [][]string
 	for _, n := range side {
 		notes = append(notes, wrap(d.pen.measure, sideFace, n, d.side))
 	}
-	b := fixedBlock(14, textHeight(headFace, len(lines))+3, func(y, h float64) {
+	b := fixedBlock(tableGap, textHeight(headFace, len(lines))+3, func(y, h float64) {
 		d.pen.lines(headFace, chart.Ink, x, y, lines)
 		at := y + 1
 		for _, n := range notes {
@@ -200,78 +103,123 @@ func (d *document) note(text string, x, room float64) block {
 	})
 }
 
-// headBlock is the header of a table, heads at the bottom of their cells.
-func (d *document) headBlock(g grid, x float64) block {
+// headBlock is the head of a table, at each strip it is set in; the names stand at the bottom of their cells.
+func (d *document) headBlock(g grid, strips []float64) block {
 	cells := make([][]string, len(g.t.Columns))
 	most := 0
 	for i, c := range g.t.Columns {
 		for _, line := range headLines(c) {
-			cells[i] = append(cells[i], wrap(d.pen.measure, g.head, line, g.widths[i]+cellGap/2)...)
+			cells[i] = append(cells[i], wrap(d.pen.measure, g.head, line, g.widths[i]+0.5)...)
 		}
 		most = max(most, len(cells[i]))
 	}
-	height := textHeight(g.head, most) + 2*rowPad
-	b := fixedBlock(0, height, func(y, h float64) {
-		at := x
-		for i, c := range g.t.Columns {
-			top := y + rowPad + textHeight(g.head, most) - textHeight(g.head, len(cells[i]))
-			for k, line := range cells[i] {
-				f := g.head
-				if c.Unit != "" && k == len(cells[i])-1 {
-					f = g.face
-				}
-				d.cellLine(f, c.Right, at, top+f.size*0.93+float64(k)*f.leading(), g.widths[i], line)
+	b := fixedBlock(0, textHeight(g.head, most)+2*loosePad, func(y, h float64) {
+		for _, x := range strips {
+			at := x
+			for i, c := range g.t.Columns {
+				top := y + loosePad + textHeight(g.head, most) - textHeight(g.head, len(cells[i]))
+				d.headCell(g, c, cells[i], at, top, g.widths[i])
+				at += g.widths[i] + cellGap
 			}
-			at += g.widths[i] + cellGap
+			d.pen.rule(chart.Ink, 0.7, x, x+g.total(), y+h)
 		}
-		d.pen.rule(chart.Ink, 0.7, x, x+g.total(), y+h)
 	})
 	b.keep = true
 	return b
 }
 
-func (d *document) cellLine(f face, right bool, x, y, width float64, line string) {
-	if right {
-		d.pen.right(f, chart.Ink, x+width, y, line)
-		return
+// headCell sets a column's name bold and its unit, on the last line, light.
+func (d *document) headCell(g grid, c report.Column, lines []string, x, y, width float64) {
+	for k, line := range lines {
+		f := g.head
+		if c.Unit != "" && k == len(lines)-1 {
+			f = g.face
+		}
+		base := y + f.size*0.93 + float64(k)*f.leading()
+		if c.Right {
+			d.pen.right(f, chart.Ink, x+width, base, line)
+		} else {
+			d.pen.text(f, chart.Ink, x, base, line)
+		}
 	}
-	d.pen.text(f, chart.Ink, x, y, line)
 }
 
-func (d *document) rowBlock(g grid, x float64, row []report.Cell) block {
-	cells := make([][]string, len(row))
+// A setRow is a row of a table at its place across, its cells broken into lines.
+type setRow struct {
+	x     float64
+	row   []report.Cell
+	texts [][]string
+}
+
+// rowBlocks sets one row in each strip: row i in the first, and in a folded table the row half way on in the second. A
+// row of very many lines takes several blocks.
+func (d *document) rowBlocks(g grid, strips []float64, i, perStrip int) []block {
+	var set []setRow
 	most := 1
+	for s, x := range strips {
+		if k := i + s*perStrip; k < len(g.t.Rows) {
+			texts, n := d.wrapRow(g, g.t.Rows[k])
+			set = append(set, setRow{x, g.t.Rows[k], texts})
+			most = max(most, n)
+		}
+	}
+	ruled := !g.dense() || i%5 == 4 || i == perStrip-1
+	var out []block
+	for first := 0; first < most; first += mostLines {
+		n := min(mostLines, most-first)
+		last := first+n == most
+		out = append(out, fixedBlock(0, textHeight(g.face, n)+2*g.pad(), func(y, h float64) {
+			for _, r := range set {
+				d.setRow(g, r, first, n, y+g.pad())
+				if ruled && last {
+					d.pen.rule(chart.Hair, 0.4, r.x, r.x+g.total(), y+h)
+				}
+			}
+		}))
+	}
+	return out
+}
+
+// setRow sets n lines of a row, from a first one on.
+func (d *document) setRow(g grid, r setRow, first, n int, y float64) {
+	at := r.x
+	for k, c := range r.row {
+		lines := r.texts[k][min(first, len(r.texts[k])):min(first+n, len(r.texts[k]))]
+		if first > 0 {
+			c.Result = "" // the symbol stands on the first line
+		}
+		d.cell(g, k, c, lines, at, y)
+		at += g.widths[k] + cellGap
+	}
+}
+
+// wrapRow breaks the cells of a row into lines and returns how many the highest has.
+func (d *document) wrapRow(g grid, row []report.Cell) (texts [][]string, most int) {
 	for i, c := range row {
 		room := g.widths[i] + 0.5
 		if c.Result != "" {
 			room -= markRoom
 		}
-		cells[i] = wrap(d.pen.measure, g.face, c.Text, room)
-		most = max(most, len(cells[i]))
+		texts = append(texts, wrap(d.pen.measure, g.face, c.Text, room))
+		most = max(most, len(texts[i]))
 	}
-	return fixedBlock(0, textHeight(g.face, most)+2*rowPad, func(y, h float64) {
-		at := x
-		for i, c := range row {
-			d.cell(g, i, c, cells[i], at, y+rowPad)
-			at += g.widths[i] + cellGap
-		}
-		d.pen.rule(chart.Hair, 0.4, x, x+g.total(), y+h)
-	})
+	return texts, most
 }
 
+// cell sets one cell; a verdict has its symbol before the word.
 func (d *document) cell(g grid, i int, c report.Cell, lines []string, x, y float64) {
 	f, ink := g.face, chart.Ink
 	if c.Result != "" {
 		d.pen.symbol(c.Result, x, y+(f.size*1.18-markSize)/2, markSize)
 		x += markRoom
 		ink = verdictInk(c.Result)
-		f.bold = c.Result == "exceeds"
+		f.bold = c.Result == limits.Exceeds
 	}
-	if g.t.Columns[i].Right {
-		for k, line := range lines {
-			d.pen.right(f, ink, x+g.widths[i], y+f.size*0.93+float64(k)*f.leading(), line)
-		}
+	if !g.t.Columns[i].Right {
+		d.pen.lines(f, ink, x, y, lines)
 		return
 	}
-	d.pen.lines(f, ink, x, y, lines)
+	for k, line := range lines {
+		d.pen.right(f, ink, x+g.widths[i], y+f.size*0.93+float64(k)*f.leading(), line)
+	}
 }

@@ -1,6 +1,9 @@
 package pdf
 
-import "strings"
+import (
+	"math"
+	"strings"
+)
 
 // A measure gives the width in points of a text set in a face.
 type measure func(f face, s string) float64
@@ -47,8 +50,12 @@ func breakWord(width measure, f face, line, word string, room float64) []string 
 			line = part
 			continue
 		}
+		even := room
+		if line == "" { // equal pieces, not a line and a leftover
+			even = width(f, part)/math.Ceil(width(f, part)/room) + f.size
+		}
 		for _, r := range part {
-			if line != "" && width(f, line+string(r)) > room {
+			if line != "" && width(f, line+string(r)) > min(room, even) {
 				lines = append(lines, strings.TrimSpace(line))
 				line = ""
 			}
