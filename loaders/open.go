@@ -14,6 +14,7 @@ import (
 	"wavetally/harmonics/wave"
 	"wavetally/loaders/csv"
 	"wavetally/loaders/input"
+	"wavetally/loaders/wav"
 	"wavetally/loaders/xlsx"
 )
 
@@ -28,6 +29,7 @@ type format struct {
 
 // formats are tried in this order; a table of text, which has no mark of its own, comes last.
 var formats = []format{
+	{"WAV", wav.Open},
 	{"XLSX", xlsx.Open},
 	{"CSV", csv.Open},
 }
