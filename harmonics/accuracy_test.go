@@ -65,7 +65,7 @@ func TestAccuracySteady(t *testing.T) {
 
 func accuracySteady(t *testing.T, nominal, hz, rate float64) {
 	top := min(50, int(0.8*rate/2/hz))
-	r := synth.Recording{Rate: rate, Seconds: 2.4, Frequency: synth.Frequency{Hz: hz}, Channels: []synth.Channel{
+	r := synth.Recording{Rate: rate, Seconds: 1.3, Frequency: synth.Frequency{Hz: hz}, Channels: []synth.Channel{
 		{Name: "V1", Unit: "V", Harmonics: spread(230, top)},
 		{Name: "I1", Unit: "A", Harmonics: synth.Delayed(spread(10, top), 0.07)},
 	}}

@@ -4,6 +4,10 @@ import (
 	"math"
 	"math/cmplx"
 
+	"gonum.org/v1/gonum/dsp/fourier"
+	"gonum.org/v1/gonum/dsp/window"
+	"gonum.org/v1/gonum/stat"
+
 	"wavetally/harmonics/site"
 	"wavetally/harmonics/wave"
 )
@@ -31,12 +35,12 @@ func FirstLook(src wave.Source) (site.Look, error) {
 				data[k] = append(data[k], v)
 			}
 		}
-		if len(data) > 0 && float64(len(data[0])) >= acquireSeconds*rate {
+		if len(data) > 0 && (len(data[0]) >= lookMost || len(data[0]) >= lookLeast && float64(len(data[0])) >= acquireSeconds*rate) {
 			break
 		}
 	}
 	strongest := -1
-	var best float64
+	var best, share float64
 	for k, x := range data {
 		if len(x) == 0 {
 			return look, nil
@@ -56,10 +60,15 @@ func FirstLook(src wave.Source) (site.Look, error) {
 		}
 		if f := acquire(x, rate, lowest50, highest60); f.clear && weight*f.rms > best {
 			best, strongest, look.Frequency = weight*f.rms, k, f.hz
+			share = f.rms * f.rms / (c.RMS*c.RMS - mean*mean)
 		}
 	}
-	if strongest < 0 {
-		return look, nil
+	if strongest < 0 || share < dominant {
+		// What lies in the mains' band may be a harmonic of a fundamental whose times are wrong.
+		if look.TimeFactor = timeFactor(data, rate); look.TimeFactor != 0 || strongest < 0 {
+			look.Frequency = 0
+			return look, nil
+		}
 	}
 	first := cmplx.Phase(firstPhasor(data[0], rate, look.Frequency))
 	for k, x := range data {
@@ -72,6 +81,58 @@ func FirstLook(src wave.Source) (site.Look, error) {
 		}
 	}
 	return look, nil
+}
+
+// How many samples a channel are looked at, whatever the time base says: it may be wrong.
+const lookLeast, lookMost = 4096, 1 << 18
+
+// timeFactors are by what a time column is commonly wrong: milliseconds, microseconds or nanoseconds taken for seconds or
+// the other way round, minutes or hours for seconds, and sampling rates off by a decade or by two.
+var timeFactors = []float64{1e-3, 1e3, 1e-6, 1e6, 1e-9, 1e9, 1.0 / 60, 60, 1.0 / 3600, 3600, 0.1, 10, 0.01, 100, 0.5, 2}
+
+// dominant is the share of a channel's power below which its supposed fundamental is not taken at its word.
+const dominant = 0.2
+
+// factorFit is how close to 50 or 60 Hz a wrong time base must come after correction: mains frequency keeps to it.
+const factorFit = 0.004
+
+// timeFactor looks for one component that stands for most of a channel's power, wherever it is, and says by which common
+// factor times are wrong if that is the fundamental; 0 when none fits.
+func timeFactor(data [][]float64, rate float64) float64 {
+	for _, x := range data {
+		n := min(len(x), lookMost)
+		if n < 64 {
+			continue
+		}
+		v := append([]float64(nil), x[:n]...)
+		mean := stat.Mean(v, nil)
+		for i := range v {
+			v[i] -= mean
+		}
+		window.Hann(v)
+		lines := fourier.NewFFT(n).Coefficients(nil, v)
+		best, level, all := 0, 0.0, 0.0
+		for k := 2; k < len(lines); k++ {
+			p := square(lines[k])
+			all += p
+			if p > level {
+				best, level = k, p
+			}
+		}
+		if best < 2 || best+1 >= len(lines) || level+square(lines[best-1])+square(lines[best+1]) < 0.6*all {
+			continue
+		}
+		a, b, c := math.Log(cmplx.Abs(lines[best-1])), math.Log(cmplx.Abs(lines[best])), math.Log(cmplx.Abs(lines[best+1]))
+		hz := (float64(best) + (a-c)/(2*(a-2*b+c))) * rate / float64(n)
+		for _, f := range timeFactors {
+			for _, nominal := range []float64{50, 60} {
+				if math.Abs(hz/f/nominal-1) < factorFit {
+					return f
+				}
+			}
+		}
+	}
+	return 0
 }
 
 // firstPhasor returns the rms phasor of the fundamental over the whole cycles of x, under a Hann window.

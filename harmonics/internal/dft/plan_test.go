@@ -14,14 +14,17 @@ import (
 func byDefinition(x []float64) []complex128 {
 	n := len(x)
 	out := make([]complex128, n/2+1)
+	turn := make([]complex128, n)
+	for j := range turn {
+		turn[j] = cmplx.Rect(1, -2*math.Pi*float64(j)/float64(n))
+	}
 	for k := range out {
 		g := math.Sqrt2
 		if k == 0 || 2*k == n {
 			g = 1
 		}
 		for j, v := range x {
-			angle := -2 * math.Pi * float64(j*k%n) / float64(n)
-			out[k] += complex(v*g/float64(n), 0) * cmplx.Rect(1, angle)
+			out[k] += complex(v*g/float64(n), 0) * turn[j*k%n]
 		}
 	}
 	return out
