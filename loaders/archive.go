@@ -35,7 +35,7 @@ const (
 	ratioApplies = 64 << 20
 )
 
-var errBomb = errors.New("it unpacks to more than 300 times its size, which no recording does; it may be made to harm: do not use it")
+const bomb = input.Refusal("it unpacks to more than 300 times its size, which no recording does; it may be made to harm: do not use it")
 
 // A kind of packed file.
 type packing uint8
@@ -256,7 +256,7 @@ func (r *ratioReader) Read(p []byte) (int, error) {
 		err = input.ErrCut // callers must not take it for the end of a short read
 	}
 	if r.n > ratioApplies && r.n > maxRatio*r.packed {
-		return n, errBomb
+		return n, bomb
 	}
 	return n, err
 }

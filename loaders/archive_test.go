@@ -148,7 +148,7 @@ func TestBomb(t *testing.T) {
 		last = err
 	}
 	runtime.ReadMemStats(&after)
-	const want = "bomb.csv.gz: reading failed: it unpacks to more than 300 times its size, which no recording does; it may be made to harm: do not use it"
+	const want = "bomb.csv.gz: it unpacks to more than 300 times its size, which no recording does; it may be made to harm: do not use it"
 	var parse *wave.ParseError
 	if !errors.As(last, &parse) || last.Error() != want {
 		t.Errorf("error is %v, want %s", last, want)

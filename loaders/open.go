@@ -78,6 +78,9 @@ func itemsIn(path string, opt Options) ([]item, error) {
 	if err := readable(path); err != nil {
 		return nil, err
 	}
+	if err := refuseForeign(path); err != nil {
+		return nil, err
+	}
 	name := filepath.Base(path)
 	switch packingOf(path) {
 	case gzipFile:

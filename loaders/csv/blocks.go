@@ -99,10 +99,9 @@ func (s *source) stretch() float64 {
 
 // take hands over the rows of a chunk. It reports false when reading is to end.
 func (r *run) take(c *chunk) bool {
-	if c.open && c.rows > 0 && c.tail > 0 {
+	if c.cut && c.rows > 0 {
 		r.source.addNote("truncated", "", "The last line, %d, ends in the middle of a row; it is left out.", r.lines+c.lines-1)
-		c.rows, c.tail = c.rows-1, c.tail-1
-		c.odd.ragged.n--
+		c.dropLast()
 	}
 	if whole := c.rows - c.tail; whole > 0 {
 		if r.pending > 0 && !r.blanks() {

@@ -1,6 +1,7 @@
 package csv
 
 import (
+	"bytes"
 	"math"
 
 	"wavetally/loaders/table"
@@ -11,6 +12,7 @@ import (
 type chunk struct {
 	text []byte // ends with a line end
 	open bool   // the file ended without one here
+	cut  bool   // in the middle of a row
 	err  error  // that ended reading after this chunk
 
 	rows    int
@@ -96,7 +98,7 @@ func (o *oddities) merge(p *oddities, lines int) {
 
 // reset makes c ready to be filled again.
 func (c *chunk) reset() {
-	c.rows, c.digits, c.most, c.lines, c.tail, c.open, c.err = 0, math.MaxInt, 0, 0, 0, false, nil
+	c.rows, c.digits, c.most, c.lines, c.tail, c.open, c.cut, c.err = 0, math.MaxInt, 0, 0, 0, false, false, nil
 	c.odd.reset()
 }
 
@@ -132,8 +134,43 @@ func (c *chunk) parse(p *plan) {
 		if c.rows == len(c.times) {
 			c.grow()
 		}
-		i = c.row(p, b, i)
+		before := c.rows
+		if i = c.row(p, b, i); c.open && i == len(b)-1 && c.rows > before {
+			c.cut = c.tail > 0 || c.seemsCut(p)
+		}
 	}
+}
+
+// seemsCut reports whether the last line, which has no line end, stops within its last cell: the cell cannot be read,
+// or has fewer decimals than all of those above it.
+func (c *chunk) seemsCut(p *plan) bool {
+	if n := len(c.strange); n > 0 && c.strange[n-1].to == len(c.text)-1 {
+		return true
+	}
+	lines := bytes.Split(bytes.TrimRight(c.text, "\r\n"), []byte{'\n'})
+	if len(lines) < 5 {
+		return false
+	}
+	last := lastDecimals(p, lines[len(lines)-1])
+	for _, line := range lines[max(0, len(lines)-20) : len(lines)-1] {
+		if lastDecimals(p, line) <= last {
+			return false
+		}
+	}
+	return true
+}
+
+// lastDecimals counts the decimals of a line's last cell.
+func lastDecimals(p *plan, line []byte) int {
+	line = bytes.TrimRight(line, "\r ")
+	if p.delimiter != 0 {
+		line = line[bytes.LastIndexByte(line, p.delimiter)+1:]
+	}
+	at := bytes.IndexByte(line, p.mark)
+	if at < 0 {
+		return 0
+	}
+	return len(line) - at - 1
 }
 
 // tries counts the cells of a row that hold a number and that hold text.
@@ -228,13 +265,13 @@ func (c *chunk) cell(p *plan, b []byte, i int, s *step, found *tries) (float64, 
 // finish decides what to make of a line whose cells have been read.
 func (c *chunk) finish(p *plan, line []byte, width int, found tries, clock instant) {
 	switch {
-	case p.complete(width) && (found.good > 0 || p.hasTime && clock.set || found.text == 0 && width > 1):
+	case p.complete(width) && !clock.text && (found.good > 0 || p.hasTime && clock.set || found.text == 0 && width > 1):
 		c.keep(p, line, clock)
 	case len(table.Trim(line)) == 0:
 		if line[0] == 0 {
 			c.odd.nul.add(c.lines, nil)
 		}
-	case found.good == 0 || p.hasTime && !clock.set || !p.hasTime && found.text > 0:
+	case found.good == 0 || clock.text || p.hasTime && !clock.set || !p.hasTime && found.text > 0:
 		c.odd.text.add(c.lines, line)
 	default:
 		c.odd.ragged.add(c.lines, line)
@@ -267,6 +304,23 @@ func (c *chunk) keep(p *plan, line []byte, clock instant) {
 	c.times[c.rows] = t
 	c.rows++
 	c.tail = 0
+}
+
+// dropLast takes the last row back, with what was odd about it.
+func (c *chunk) dropLast() {
+	c.rows--
+	if c.tail > 0 {
+		c.tail--
+		c.odd.ragged.n--
+		return
+	}
+	for _, s := range c.strange {
+		if s.kind == table.Text {
+			c.odd.unreadable[s.channel].n--
+		} else {
+			c.odd.missing[s.channel].n--
+		}
+	}
 }
 
 // resolve finds how finely stamps are written. Trailing zeros may have been left out of some, so the longest of a group

@@ -14,6 +14,7 @@ import (
 	"io/fs"
 	"math"
 	"path/filepath"
+	"strings"
 	"time"
 
 	"wavetally/harmonics/wave"
@@ -52,6 +53,7 @@ type source struct {
 	channels []channel
 	plan     *plan
 	first    instant // of the first row
+	stamped  int64   // rows of the head that tell a time
 	fit      timebase.Fit
 	header   wave.Header
 	chunk    int // bytes
@@ -152,7 +154,11 @@ func (s *source) readError(err error) error {
 	if errors.As(err, &known) {
 		return err
 	}
-	return &wave.ParseError{File: s.name, Err: err, Msg: fmt.Sprintf("reading failed: %v", err)}
+	var refusal input.Refusal
+	if errors.As(err, &refusal) {
+		return &wave.ParseError{File: s.name, Err: err, Msg: string(refusal)}
+	}
+	return &wave.ParseError{File: s.name, Err: err, Msg: fmt.Sprintf("reading failed (%v); copy the file again from where it came from", err)}
 }
 
 func (s *source) understand(head []byte, whole bool) error {
@@ -196,11 +202,31 @@ func (s *source) chooseChannels() error {
 	}
 	switch n := len(s.channels); {
 	case n == 0:
-		return &wave.UnsupportedError{File: s.name, Line: s.layout.Line, Msg: "no column holds a voltage or a current; export the waveforms, one column a channel"}
+		return &wave.UnsupportedError{File: s.name, Line: s.layout.Line, Msg: fmt.Sprintf("no column holds a voltage or a current (%s); export the waveforms, one column a channel", s.whyNot())}
 	case n > maxChannels:
 		return &wave.UnsupportedError{File: s.name, Line: s.layout.Line, Msg: fmt.Sprintf("rows have %d channels, more than the %d that are read; export fewer, one row a sample", n, maxChannels)}
 	}
 	return nil
+}
+
+// whyNot says of each column why it is no channel.
+func (s *source) whyNot() string {
+	var all []string
+	for c, col := range s.layout.Columns {
+		why := col.Why
+		switch {
+		case col.Use == table.Time:
+			why = "it tells the time"
+		case why == "":
+			why = fmt.Sprintf("its unit is %q", col.Unit)
+		}
+		all = append(all, fmt.Sprintf("column %d: %s", c+1, why))
+		if c == 5 && len(s.layout.Columns) > 7 {
+			all = append(all, "and so on")
+			break
+		}
+	}
+	return strings.Join(all, "; ")
 }
 
 func (s *source) leaveOut(c int, why string) {
@@ -242,9 +268,8 @@ func (s *source) findRate(rows []byte, whole bool) error {
 	if declared < 0 || math.IsInf(declared, 0) || math.IsNaN(declared) {
 		return &wave.ParseError{File: s.name, Msg: fmt.Sprintf("sampling_rate = %g in the site sheet is no rate; state samples per second", declared)}
 	}
-	points, first := s.firstPoints(rows, whole)
-	s.first = first
-	s.setStart(first)
+	points := s.firstPoints(rows, whole)
+	s.setStart(s.first)
 	if s.layout.Clock.Kind == table.NumberClock || s.layout.Clock.Kind == table.StampClock {
 		rate, err := s.rateFromStamps(points, whole)
 		switch {
@@ -271,6 +296,8 @@ func (s *source) findRate(rows []byte, whole bool) error {
 		s.header.Rate = declared
 	case stated > 0:
 		s.header.Rate = stated
+	case s.layout.Unread() != "":
+		return &wave.ParseError{File: s.name, Line: s.layout.Line, Msg: s.layout.Unread()}
 	default:
 		return &wave.UnsupportedError{File: s.name, Line: s.layout.Line,
 			Msg: "no column tells the time and no line above states the sampling rate; state it with --sampling-rate, or sampling_rate under [file] in the site sheet"}
@@ -288,9 +315,9 @@ func (s *source) compare(fromStamps, other float64, who string) {
 }
 
 // firstPoints parses the rows of head for their times.
-func (s *source) firstPoints(rows []byte, whole bool) (points []timebase.Point, first instant) {
+func (s *source) firstPoints(rows []byte, whole bool) []timebase.Point {
 	if !s.plan.hasTime {
-		return nil, instant{}
+		return nil
 	}
 	k := &cutter{r: bytes.NewReader(rows), size: chunkSize(128)}
 	c := newTimes(s.plan)
@@ -300,8 +327,8 @@ func (s *source) firstPoints(rows []byte, whole bool) (points []timebase.Point, 
 		}
 		c.read()
 	}
-	s.plan.origin = c.origin
-	return c.points, c.first
+	s.plan.origin, s.first, s.stamped = c.origin, c.first, c.row
+	return c.points
 }
 
 // rateFromStamps fits the rate to the head's stamps, and to the whole file's when those leave it open.
@@ -316,6 +343,11 @@ func (s *source) rateFromStamps(points []timebase.Point, whole bool) (float64, e
 			return 0, scanErr
 		}
 		fit, err = timebase.From(all, s.originSeconds())
+	}
+	if errors.Is(err, timebase.ErrTooFew) && s.stamped > 2 {
+		if err = timebase.ErrStanding; len(points) > 1 {
+			err = timebase.ErrCoarse
+		}
 	}
 	if err != nil {
 		return 0, err

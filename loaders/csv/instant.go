@@ -16,6 +16,7 @@ type instant struct {
 	part   float64
 	digits int // decimals as written, in the clock's unit
 	zoned  bool
+	text   bool // a cell for the time holds a word
 }
 
 // seconds is the time from the plan's origin.
@@ -42,6 +43,7 @@ func (p *plan) time(b []byte, i int, what part, t *instant) int {
 	}
 	end := table.FieldEnd(b, i, p.delimiter)
 	cell := b[i:end]
+	t.text = t.text || what != nothing && startsWord(cell)
 	switch what {
 	case number:
 		t.number(cell, p.sureMark)
@@ -61,6 +63,20 @@ func (p *plan) time(b []byte, i int, what part, t *instant) int {
 	}
 	return end
 }
+
+// startsWord reports whether a cell starts with two letters, as those of captions do and those of times do not, names
+// of months aside.
+func startsWord(cell []byte) bool {
+	cell = table.Trim(cell)
+	if len(cell) < 2 || !letter(cell[0]) || !letter(cell[1]) {
+		return false
+	}
+	_, stamp := table.ParseStamp(cell, table.DayFirst)
+	_, kind := table.Cell(cell, 0, 0)
+	return !stamp && kind == table.Text
+}
+
+func letter(c byte) bool { return c|0x20 >= 'a' && c|0x20 <= 'z' }
 
 // scan reads a plain number without an exponent as whole and part.
 func (t *instant) scan(b []byte, i int, mark byte) (int, bool) {

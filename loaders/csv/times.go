@@ -63,7 +63,10 @@ func (t *times) add(p timebase.Point) {
 		return
 	}
 	if p.T != t.last.T && p.Row >= t.next {
-		t.points = append(t.points, t.last, p)
+		if n := len(t.points); t.points[n-1].Row != t.last.Row {
+			t.points = append(t.points, t.last)
+		}
+		t.points = append(t.points, p)
 		t.next = p.Row + t.every
 	}
 	t.last = p
@@ -72,10 +75,10 @@ func (t *times) add(p timebase.Point) {
 	}
 }
 
-// thin drops every other pair.
+// thin drops every other pair of rows.
 func (t *times) thin() {
 	kept := t.points[:0]
-	for i := 0; i+3 < len(t.points); i += 4 {
+	for i := 0; i+1 < len(t.points); i += 4 {
 		kept = append(kept, t.points[i], t.points[i+1])
 	}
 	t.points = kept

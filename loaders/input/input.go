@@ -14,6 +14,11 @@ import (
 // ErrCut is what reading a packed file gives where the file ends too early: what came before it is good.
 var ErrCut = errors.New("the packed file is cut short")
 
+// A Refusal is a reason not to go on reading, with what to do instead, in words for the user.
+type Refusal string
+
+func (r Refusal) Error() string { return string(r) }
+
 // Options says what the user declared about the files. The zero value declares nothing.
 type Options struct {
 	File site.File      // overrules what a loader guesses about a table of text

@@ -226,6 +226,7 @@ func (g *guesser) headingRow(text []byte) []string {
 		if c == 0 {
 			texts[c] = strings.TrimSpace(strings.TrimLeft(texts[c], "#%!;"))
 		}
+		texts[c] = strings.Trim(texts[c], `"`) // of a quote that is not closed
 	}
 	return texts
 }
@@ -267,10 +268,13 @@ func (g *guesser) chooseValues(l *Layout) {
 		col := &l.Columns[c]
 		switch {
 		case col.Use == Time || col.Why != "":
-		case g.kinds[c] == Empty || g.kinds[c] == Missing:
+		case g.kinds[c] == Empty:
 			col.Why = "it is empty"
 		case g.kinds[c] == Text || g.kinds[c] == stampKind:
 			col.Why = "it holds text"
+			if l.badTime == "" && isTimeWord(col.Name) {
+				l.badTime = firstText(g.texts[c])
+			}
 		default:
 			col.Use = Value
 		}

@@ -1,6 +1,7 @@
 package table
 
 import (
+	"bytes"
 	"errors"
 	"fmt"
 	"strconv"
@@ -111,6 +112,9 @@ func guessDialect(lines []line, declared site.File) (dialect, error) {
 	if best.delimiter == ',' && best.width == 2 && !fixed && declared.Decimal != "." && pairIsDecimal(sample) {
 		best.dialect = dialect{delimiter: 0, mark: ',', width: 1}
 		return best.dialect, nil
+	}
+	if best.delimiter == ',' && best.marked == 0 && declared.Decimal == "" && commasForAll(sample, best.width) {
+		return dialect{}, &FormatError{Line: sample[len(sample)-1].number, Msg: "commas both separate the columns and mark the decimals; export again with semicolons or tabs between columns, or with decimal points"}
 	}
 	if best.marked == 0 && declared.Decimal == "" {
 		best.mark = 0
@@ -223,6 +227,35 @@ func kindOf(cell []byte, mark byte) Kind {
 		}
 	}
 	return kind
+}
+
+// commasForAll recognises rows such as 0,0005,229,81,-14,70: in every second cell whole numbers without sign, always of
+// as many digits, some with a leading zero.
+func commasForAll(lines []line, width int) bool {
+	if width < 4 || width%2 != 0 {
+		return false
+	}
+	digits := make([]int, width)
+	rows, zeros := 0, 0
+	var row [][]byte
+	for _, l := range lines {
+		row = cells(row, l.text, ',')
+		if score, _ := rowScore(row, '.'); score == 0 || len(row) != width {
+			continue
+		}
+		rows++
+		for c := 1; c < width; c += 2 {
+			cell := row[c]
+			if len(cell) == 0 || len(bytes.Trim(cell, "0123456789")) > 0 || digits[c] > 0 && digits[c] != len(cell) {
+				return false
+			}
+			digits[c] = len(cell)
+			if len(cell) > 1 && cell[0] == '0' {
+				zeros++
+			}
+		}
+	}
+	return rows >= 5 && zeros > 0
 }
 
 // pairIsDecimal tells one column with a decimal comma from two columns of whole numbers: the second number never has

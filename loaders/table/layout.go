@@ -62,6 +62,16 @@ type Layout struct {
 	Columns   []Column
 	Clock     Clock
 	Facts     Facts // stated in the lines above the table
+
+	badTime string // the first cell of a column that is called a time but holds text
+}
+
+// Unread says which column should tell the time but cannot be read; "" when there is none.
+func (l Layout) Unread() string {
+	if l.badTime == "" {
+		return ""
+	}
+	return fmt.Sprintf("%q is no time that can be read; export times as seconds or as 2026-03-01 10:00:00.000, or state sampling_rate and time_column = \"none\" under [file] in the site sheet", l.badTime)
 }
 
 // Width is the number of cells in a row.

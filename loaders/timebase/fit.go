@@ -26,6 +26,7 @@ type Fit struct {
 	Low, Top float64 // s, the least and largest interval that the stamps allow
 	Jitter   float64 // s, peak to peak, by which stamps stray from even steps beyond their resolution; 0: not at all
 	Points   int     // that the fit rests on
+	Exact    bool    // the stamps agree with Rate far closer than their resolution asks for
 }
 
 // Rate is the sampling rate in samples per second: the simplest possible one, or the best estimate when stamps jitter.
@@ -42,18 +43,20 @@ func (f Fit) Uncertainty() float64 { return (f.Top - f.Low) / 2 / f.Interval }
 // Sure reports whether the rate is known for all that it is used for: closely enough, or because a number as simple as
 // it would hardly lie among the possible ones by chance.
 func (f Fit) Sure() bool {
-	if f.Uncertainty() < 2e-5 {
+	if f.Uncertainty() < 2e-5 || f.Exact {
 		return true
 	}
 	_, rate := roundest(1/f.Top, 1/f.Low)
 	_, interval := roundest(f.Low, f.Top)
-	return f.Jitter == 0 && math.Pow10(min(rate, interval))*2*f.Uncertainty() < 0.05
+	return f.Jitter == 0 && math.Pow10(min(rate, interval))*2*f.Uncertainty() < 0.25
 }
 
 // Errors of From.
 var (
 	ErrTooFew   = errors.New("too few time stamps")
 	ErrStanding = errors.New("the time stamps do not advance")
+	ErrUneven   = errors.New("the time stamps advance too unevenly")
+	ErrCoarse   = errors.New("the time stamps change too seldom")
 )
 
 // From fits the interval of points, which are in the order of their rows. Gaps and jumps of the clock are left out: the
@@ -76,7 +79,12 @@ func From(points []Point, origin float64) (Fit, error) {
 	if len(run) < 3 {
 		return Fit{}, ErrTooFew
 	}
-	return bound(run, slope(run), origin), nil
+	f := bound(run, slope(run), origin)
+	span := f.Interval * float64(run[len(run)-1].Row-run[0].Row)
+	if !(f.Interval > 1e-12 && f.Interval < 1e6 && f.Low > 0 && f.Uncertainty() < 0.1 && f.Jitter < 0.1*span) {
+		return Fit{}, ErrUneven
+	}
+	return f, nil
 }
 
 // roughInterval is the median interval over pairs of rows, as far apart as their resolution and jitter need.
@@ -152,6 +160,7 @@ func bound(points []Point, start, origin float64) Fit {
 		g := func(b float64) float64 { return excess(points, b, r, origin) }
 		if g(f.Interval) <= 0 {
 			f.Low, f.Top = edge(g, f.Interval, -1), edge(g, f.Interval, +1)
+			f.Exact = len(points) >= 10 && excess(points, 1/f.Rate(), rounding{steps: 0.005}, origin) <= 0
 			return f
 		}
 	}
