@@ -113,7 +113,7 @@ func (p panel) point(x, y float64) vg.Point { return vg.Point{X: p.x.at(x), Y: p
 
 // yTicks are the ticks of the panel's y axis, as many as its height has room for.
 func (p panel) yTicks() []tick {
-	return scaleTicks(p.y.low, p.y.high, max(3, int((p.y.to-p.y.from)/15)))
+	return scaleTicks(p.y.low, p.y.high, min(max(3, int((p.y.to-p.y.from)/15)), 7))
 }
 
 // scaleTicks are nice ticks, but at least two: one alone gives no scale.

@@ -53,6 +53,12 @@ func lookOf(r site.Role) look {
 	return phaseLooks[r.Phase()]
 }
 
+// tint is an ink half way to white, to draw upon.
+func tint(c color.NRGBA) color.NRGBA {
+	half := func(v uint8) uint8 { return v/2 + 128 }
+	return color.NRGBA{half(c.R), half(c.G), half(c.B), c.A}
+}
+
 func (l look) line(width vg.Length) draw.LineStyle {
 	return draw.LineStyle{Color: l.ink, Width: width, Dashes: l.dashes}
 }

@@ -19,25 +19,24 @@ type row struct {
 	main   bool // carries the limits and the chart's own y axis
 }
 
-// rowsOf sorts a chart's lines into panels: what was measured in one, and in lower ones, each to a scale of its own,
-// what would vanish there or has another unit: a waveform's residual, the load under a trend.
+// rowsOf sorts a chart's lines into panels: what was measured in the first, and in lower ones, each to a scale of its
+// own, what would vanish there or has another unit: a waveform's residual, the load under a trend.
 func rowsOf(ch report.Chart) []row {
-	rows := []row{{main: true}, {}, {}}
+	var rows []row
 	for _, s := range ch.Series {
-		i := 0
-		switch s.Use {
-		case report.Residual:
-			i = 1
-		case report.Other:
-			i = 2
+		i := slices.IndexFunc(rows, func(r row) bool { return sharesRow(r.series[0], s) })
+		if i < 0 {
+			i = len(rows)
+			rows = append(rows, row{main: i == 0})
 		}
 		rows[i].series = append(rows[i].series, s)
 	}
-	rows = slices.DeleteFunc(rows, func(r row) bool { return len(r.series) == 0 })
-	if len(rows) > 0 {
-		rows[0].main = true // a chart of companions only is about them
-	}
 	return rows
+}
+
+func sharesRow(a, b report.Series) bool {
+	apart := func(s report.Series) bool { return s.Use == report.Residual || s.Use == report.Other }
+	return a.Unit == b.Unit && (a.Use == b.Use || !apart(a) && !apart(b))
 }
 
 // drawLines draws lines over time.
@@ -46,7 +45,7 @@ func drawLines(c draw.Canvas, ch report.Chart, at Place) {
 	weights := make([]float64, len(rows))
 	for i, r := range rows {
 		weights[i] = 1
-		if !r.main {
+		if u := r.series[0].Use; !r.main && (u == report.Residual || u == report.Other) {
 			weights[i] = 0.45
 		}
 	}
@@ -171,14 +170,14 @@ func (r row) compared() bool {
 	return slices.ContainsFunc(r.series, func(s report.Series) bool { return s.Use == report.Rebuilt })
 }
 
-// lineStyle is how a series is drawn. Where it is compared with what was rebuilt, the recorded line is a broad one
-// without dashes, and the dashes over it are the rebuilt one's.
+// lineStyle is how a series is drawn. Where it is compared with what was rebuilt, the recorded line is a broad
+// light one without dashes, and the dashes over it are the rebuilt one's.
 func lineStyle(s report.Series, compared bool) draw.LineStyle {
 	l := lookOf(s.Role)
 	switch s.Use {
 	case report.Measured:
 		if compared {
-			return solid(l.ink, 1.7)
+			return solid(tint(l.ink), 1.9)
 		}
 		return l.line(0.9)
 	case report.Rebuilt:

@@ -105,10 +105,11 @@ func newDocument(s *report.Survey, size gofpdf.SizeType) *document {
 	return d
 }
 
-// zoneOf is the site's clock. A name that is not known was refused when the sheet was read.
+// zoneOf is the site's clock. A name that is not known was refused when the sheet was read; that of this machine would
+// give other bytes elsewhere.
 func zoneOf(sheet site.Sheet) *time.Location {
 	zone, err := time.LoadLocation(sheet.Site.Timezone)
-	if err != nil {
+	if err != nil || zone == time.Local {
 		return time.UTC
 	}
 	return zone

@@ -1,8 +1,6 @@
 package pdf
 
 import (
-	"image/color"
-
 	"wavetally/report"
 	"wavetally/report/chart"
 )
@@ -30,7 +28,7 @@ func (d *document) figure(c report.Chart) block {
 
 // section begins a part of the document: a rule over the whole width and its title.
 func (d *document) section(title string) block {
-	b := fixedBlock(24, 24, func(y, h float64) {
+	b := fixedBlock(22, 22, func(y, h float64) {
 		d.pen.rule(chart.Ink, 1, d.left, d.rightX(), y)
 		d.pen.text(sectionFace, chart.Ink, d.left, y+17, title)
 	})
@@ -45,44 +43,39 @@ const mostLines = 14
 // item is a paragraph in the main column with a label beside it and small print below it.
 func (d *document) item(label, text, small string, gap float64) []block {
 	m := d.pen.measure
-	out := d.paragraph(label, wrap(m, textFace, text, d.main()), textFace, gap)
+	var fine []string
 	if small != "" {
-		out[len(out)-1].keep = true
-		fine := d.paragraph("", wrap(m, sideFace, small, d.main()), sideFace, 2)
-		out = append(out, fine...)
+		fine = wrap(m, sideFace, small, d.main())
 	}
-	return out
+	return d.paragraph(label, wrap(m, textFace, text, d.main()), textFace, fine, gap)
 }
 
-// paragraph sets lines in the main column, in as many blocks as it takes, the label beside the first.
-func (d *document) paragraph(label string, lines []string, f face, gap float64) []block {
+// paragraph sets lines in the main column, in as many blocks as it takes: the label beside the first, small print below
+// the last.
+func (d *document) paragraph(label string, lines []string, f face, fine []string, gap float64) []block {
 	var out []block
 	side := wrap(d.pen.measure, sideHead, label, d.side)
 	for first := 0; first < len(lines); first += mostLines {
 		piece := lines[first:min(first+mostLines, len(lines))]
 		height := float64(len(piece)) * f.leading()
-		if first+mostLines >= len(lines) {
-			height = textHeight(f, len(piece))
-		}
+		var beside, below []string
 		if first == 0 {
-			height = max(height, textHeight(sideHead, len(side)))
+			beside = side
 		}
-		labelled := first == 0
+		if first+mostLines >= len(lines) {
+			below, height = fine, textHeight(f, len(piece))
+		}
+		fineAt := height + 2
+		if below != nil {
+			height = fineAt + textHeight(sideFace, len(below))
+		}
+		height = max(height, textHeight(sideHead, len(beside)))
 		out = append(out, fixedBlock(gap, height, func(y, h float64) {
-			if labelled {
-				d.pen.lines(sideHead, chart.Ink, d.left, y+(f.size-sideHead.size)*0.6, side)
-			}
-			d.pen.lines(f, inkOf(f), d.mainX(), y, piece)
+			d.pen.lines(sideHead, chart.Ink, d.left, y+(f.size-sideHead.size)*0.6, beside)
+			d.pen.lines(f, chart.Ink, d.mainX(), y, piece)
+			d.pen.lines(sideFace, chart.Faint, d.mainX(), y+fineAt, below)
 		}))
 		gap = 0
 	}
 	return out
-}
-
-// inkOf sets small print back.
-func inkOf(f face) color.NRGBA {
-	if f == sideFace {
-		return chart.Faint
-	}
-	return chart.Ink
 }

@@ -1,9 +1,11 @@
 package pdf
 
 import (
+	"math"
 	"slices"
 	"strings"
 
+	"wavetally/harmonics/limits"
 	"wavetally/report"
 )
 
@@ -26,12 +28,17 @@ func (d *document) layOut(t report.Table, room float64) []grid {
 		for i := range t.Columns {
 			g.widths[i] = d.columnWidth(g, i)
 		}
-		if g.squeeze(room) {
+		if g.squeeze(room, func(c report.Column) bool { return c.Wide }) {
 			return []grid{g}
 		}
 	}
-	first := g.fitting(room)
-	if first < 2 {
+	if g.squeeze(room, func(c report.Column) bool { return !c.Right }) { // a long name, where a short one was expected
+		return []grid{g}
+	}
+	// Parts of about equal width, not a full one and a leftover.
+	parts := math.Ceil(g.total() / room)
+	first := max(g.fitting(min(room, g.total()/parts+narrowest)), min(2, g.fitting(room)))
+	if first < 2 || first == len(t.Columns) {
 		g.force(room)
 		return []grid{g}
 	}
@@ -98,9 +105,16 @@ func (d *document) columnWidth(g grid, i int) float64 {
 		if row[i].Result != "" {
 			mark = markRoom
 		}
-		w = max(w, mark+d.pen.measure(g.face, clean(row[i].Text)))
+		w = max(w, mark+d.pen.measure(g.faceOf(row[i]), clean(row[i].Text)))
 	}
 	return w
+}
+
+// faceOf is the face a cell is set in: what exceeds stands out.
+func (g grid) faceOf(c report.Cell) face {
+	f := g.face
+	f.bold = c.Result == limits.Exceeds
+	return f
 }
 
 // headLines are a column's name, and its unit on a line of its own.
@@ -119,12 +133,12 @@ func (g grid) total() float64 {
 	return sum
 }
 
-// squeeze narrows the columns that may wrap until the table fits, always the widest, and reports whether it does.
-func (g grid) squeeze(room float64) bool {
+// squeeze narrows columns that may wrap until the table fits, always the widest, and reports whether it does.
+func (g grid) squeeze(room float64, may func(report.Column) bool) bool {
 	for over := g.total() - room; over > 0; {
 		widest := -1
 		for i, c := range g.t.Columns {
-			if c.Wide && g.widths[i] > narrowest && (widest < 0 || g.widths[i] > g.widths[widest]) {
+			if may(c) && g.widths[i] > narrowest && (widest < 0 || g.widths[i] > g.widths[widest]) {
 				widest = i
 			}
 		}

@@ -16,19 +16,22 @@ import (
 	"wavetally/report/internal/fixture"
 )
 
+// weekInputs are made once, and changed only in copies.
+var weekInputs = sync.OnceValue(fixture.WeekInputs)
+
 // hard lists surveys: those of the fixture, and hard ones made from them, as real sites and sloppy sheets bring them.
 var hard = map[string]func() *report.Survey{
-	"week":            fixture.Week,
+	"week":            func() *report.Survey { return report.Build(weekInputs()) },
 	"short":           fixture.Short,
 	"tiny":            fixture.Tiny,
-	"eleven channels": func() *report.Survey { return report.Build(withRoles(fixture.WeekInputs(), site.Roles)) },
+	"eleven channels": func() *report.Survey { return report.Build(withRoles(weekInputs(), site.Roles)) },
 	"voltages only": func() *report.Survey {
-		return report.Build(withRoles(fixture.WeekInputs(), []site.Role{"V1", "V2", "V3"}))
+		return report.Build(withRoles(weekInputs(), []site.Role{"V1", "V2", "V3"}))
 	},
 	"one current":  func() *report.Survey { return report.Build(withRoles(fixture.ShortInputs(), []site.Role{"I2"})) },
-	"no limits":    func() *report.Survey { return report.Build(withoutLimits(fixture.WeekInputs())) },
-	"read back":    func() *report.Survey { return readBack(fixture.Week()) },
-	"not measured": func() *report.Survey { return notMeasured(readBack(fixture.Week())) },
+	"no limits":    func() *report.Survey { return report.Build(withoutLimits(weekInputs())) },
+	"read back":    func() *report.Survey { return readBack(report.Build(weekInputs())) },
+	"not measured": func() *report.Survey { return notMeasured(readBack(report.Build(weekInputs()))) },
 	"long words":   longWords,
 }
 
@@ -168,7 +171,8 @@ func notMeasured(s *report.Survey) *report.Survey {
 
 // longWords has names in scripts that the fonts lack, texts longer than a page, and a plant with much to say.
 func longWords() *report.Survey {
-	in := fixture.WeekInputs()
+	in := weekInputs()
+	in.Sheet.Channels = slices.Clone(in.Sheet.Channels)
 	in.Sheet.Site.Name = "Zoë's Großbäckerei № 7 漢字 \U0001F600 \u202Eright to left\u202C " + strings.Repeat("and a name that goes on ", 20)
 	in.Sheet.Site.Location = strings.Repeat("Ünterstraße-", 60)
 	in.Sheet.Site.SurveyedBy = strings.Repeat("A. Person ", 30)
@@ -180,7 +184,7 @@ func longWords() *report.Survey {
 		{Topic: "transformer", Name: "K-factor", Value: report.Number(math.NaN()), Unit: "", Text: "Not measured, and said so."},
 		{Topic: "resonance", Name: "Lowest parallel-resonance order", Value: 10.4, Unit: "", Text: strings.Repeat("Each combination of steps was tried. ", 30)},
 	}
-	in.Doubts = append(in.Doubts,
+	in.Doubts = append(slices.Clone(in.Doubts),
 		fitness.Doubt{Code: "current-reversed", Weight: fitness.Caution, Channel: "I2", Text: strings.Repeat("The sensor on I2 may point the wrong way. ", 120),
 			Evidence: map[string]float64{"angle_deg": 181, "p_w": -41000}, Proposal: []string{"[[channel]]\nsource = \"CH5\"\nmeasures = \"I2\"\nreversed = true"}})
 	return report.Build(in)

@@ -246,7 +246,7 @@ func (d *document) rungs() []chart.Rung {
 func (d *document) small(label string, texts []string, gap float64) []block {
 	var out []block
 	for _, text := range texts {
-		out = append(out, d.paragraph(label, wrap(d.pen.measure, tableFace, text, d.main()), tableFace, gap)...)
+		out = append(out, d.paragraph(label, wrap(d.pen.measure, tableFace, text, d.main()), tableFace, nil, gap)...)
 		label, gap = "", 1
 	}
 	return out

@@ -1,7 +1,6 @@
 package pdf
 
 import (
-	"wavetally/harmonics/limits"
 	"wavetally/report"
 	"wavetally/report/chart"
 )
@@ -200,7 +199,7 @@ func (d *document) wrapRow(g grid, row []report.Cell) (texts [][]string, most in
 		if c.Result != "" {
 			room -= markRoom
 		}
-		texts = append(texts, wrap(d.pen.measure, g.face, c.Text, room))
+		texts = append(texts, wrap(d.pen.measure, g.faceOf(c), c.Text, room))
 		most = max(most, len(texts[i]))
 	}
 	return texts, most
@@ -208,12 +207,11 @@ func (d *document) wrapRow(g grid, row []report.Cell) (texts [][]string, most in
 
 // cell sets one cell; a verdict has its symbol before the word.
 func (d *document) cell(g grid, i int, c report.Cell, lines []string, x, y float64) {
-	f, ink := g.face, chart.Ink
+	f, ink := g.faceOf(c), chart.Ink
 	if c.Result != "" {
 		d.pen.symbol(c.Result, x, y+(f.size*1.18-markSize)/2, markSize)
 		x += markRoom
 		ink = verdictInk(c.Result)
-		f.bold = c.Result == limits.Exceeds
 	}
 	if !g.t.Columns[i].Right {
 		d.pen.lines(f, ink, x, y, lines)

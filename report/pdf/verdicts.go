@@ -2,14 +2,15 @@ package pdf
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"wavetally/harmonics/limits"
 	"wavetally/report"
 )
 
-// The verdict table on paper shows what is near a limit. The rest would fill pages with rows that nobody acts on; it is
-// counted below the table and listed in the spreadsheet.
+// The verdict table on paper shows what exceeds and what is near a limit. The rest would fill pages with rows that
+// nobody acts on; it is counted below the table and listed in the spreadsheet.
 const (
 	nearLimit   = 25.0 // per cent of the limit
 	fewestShown = 15
@@ -17,19 +18,18 @@ const (
 )
 
 func (d *document) verdicts() []block {
-	t, ok := d.tables["verdict"]
-	if !ok {
-		return nil
-	}
-	shown := 0
+	t := d.tables["verdict"]
+	var shown, rest [][]report.Cell
 	for i, row := range t.Rows {
-		if i < fewestShown || i < mostShown && near(t, row) {
-			shown = i + 1
+		if i < fewestShown || i < mostShown && near(t, row) || exceeds(row) {
+			shown = append(shown, row)
+		} else {
+			rest = append(rest, row)
 		}
 	}
-	if rest := t.Rows[shown:]; len(rest) > 0 {
-		t.Notes = append([]string{restNote(t, rest)}, t.Notes...)
-		t.Rows = t.Rows[:shown]
+	t.Rows = shown
+	if len(rest) > 0 {
+		t.Notes = append([]string{restNote(rest)}, t.Notes...)
 	}
 	return d.table(t)
 }
@@ -43,8 +43,12 @@ func near(t report.Table, row []report.Cell) bool {
 	return false
 }
 
+func exceeds(row []report.Cell) bool {
+	return slices.ContainsFunc(row, func(c report.Cell) bool { return c.Result == limits.Exceeds })
+}
+
 // restNote counts the rows that are not shown.
-func restNote(t report.Table, rest [][]report.Cell) string {
+func restNote(rest [][]report.Cell) string {
 	n := map[string]int{}
 	for _, row := range rest {
 		for _, c := range row {
@@ -54,10 +58,10 @@ func restNote(t report.Table, rest [][]report.Cell) string {
 		}
 	}
 	var parts []string
-	for _, r := range []string{limits.Exceeds, limits.Undecided, limits.NotAssessed, limits.Within} {
+	for _, r := range []string{limits.Undecided, limits.NotAssessed, limits.Within} {
 		if n[r] > 0 {
 			parts = append(parts, fmt.Sprintf("%d %s", n[r], r))
 		}
 	}
-	return fmt.Sprintf("Not shown: %d more orders and totals with a lower share of their limit (%s); the spreadsheet lists them.", len(rest), strings.Join(parts, ", "))
+	return fmt.Sprintf("Not shown: %d more orders and totals at lower shares of their limit (%s); the spreadsheet lists them.", len(rest), strings.Join(parts, ", "))
 }
