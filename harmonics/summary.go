@@ -19,7 +19,6 @@ const (
 	Missing      Flags = 1 << iota // a gap or missing samples fall into it
 	Unlocked                       // the fundamental could not be followed
 	Step                           // the frequency jumped inside it
-	Clipped                        // a channel ran into the end of its range
 	Dip                            // a voltage dip overlaps it
 	Swell                          // a voltage swell overlaps it
 	Interruption                   // a voltage interruption overlaps it
@@ -28,7 +27,7 @@ const (
 // Strings returns the names of the flags that are set.
 func (f Flags) Strings() []string {
 	var out []string
-	for i, name := range []string{"missing samples", "not locked", "frequency step", "clipped", "dip", "swell", "interruption"} {
+	for i, name := range []string{"missing samples", "not locked", "frequency step", "dip", "swell", "interruption"} {
 		if f&(1<<i) != 0 {
 			out = append(out, name)
 		}
