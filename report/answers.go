@@ -2,11 +2,9 @@ package report
 
 import (
 	"fmt"
-	"math"
 	"slices"
 	"strings"
 
-	"wavetally/harmonics"
 	"wavetally/harmonics/limits"
 )
 
@@ -28,15 +26,13 @@ func answersOf(s *Survey) []string {
 	return out
 }
 
-// pointAnswer says when limits that are meant for the point of common coupling were applied elsewhere.
+// pointAnswer says when limits that are meant for the point of common coupling were applied without knowing whether
+// this is it. For a point declared as another, the findings themselves say so.
 func pointAnswer(s *Survey) string {
-	switch {
-	case len(s.Findings) == 0 || s.Site.Supply.Point == "PCC":
+	if s.Site.Supply.Point != "" || !slices.ContainsFunc(s.RuleSets, func(r *limits.RuleSet) bool { return slices.Contains(r.AppliesAt, "PCC") }) {
 		return ""
-	case s.Site.Supply.Point == "":
-		return "Whether this is the point of common coupling (PCC) was not declared: limits meant for it are for information here."
 	}
-	return "This point is inside the installation: limits meant for the point of common coupling (PCC) are for information here."
+	return "Whether this is the point of common coupling (PCC) was not declared: the limits meant for it were applied as if it were."
 }
 
 // setsFor lists the rule sets that have findings on the group, in the order of the findings.
@@ -92,17 +88,28 @@ func answer(s *Survey, g group, set string) string {
 	var text string
 	switch {
 	case len(over) > 0:
-		text = fmt.Sprintf("%s exceeds %s: %s%s.%s", g.name, RuleTitle(set), s.told(over[0]), s.overText(over[0]), alsoOver(over[1:]))
+		text = fmt.Sprintf("%s exceeds %s: %s%s.%s", g.name, RuleTitle(set), told(over[0]), overText(over[0]), alsoOver(over[1:]))
 	case len(open) > 0 && open[0].Indicative:
-		text = fmt.Sprintf("%s, indicative only: %s. Nothing can be said to be within %s, because %s.", g.name, s.told(open[0]), RuleTitle(set), firstClause(open[0].Why))
+		text = fmt.Sprintf("%s, indicative only: %s. Nothing can be said to be within %s, because %s.", g.name, told(open[0]), RuleTitle(set), firstClause(open[0].Why))
 	case len(open) > 0:
-		text = fmt.Sprintf("%s is undecided under %s: %s; %s.", g.name, RuleTitle(set), s.told(open[0]), firstClause(open[0].Why))
+		text = fmt.Sprintf("%s is undecided under %s: %s; %s.", g.name, RuleTitle(set), told(open[0]), firstClause(open[0].Why))
 	case len(in) > 0:
-		text = fmt.Sprintf("%s is within %s%s: the highest share of a limit is %s.", g.name, RuleTitle(set), asFar(missed), s.told(in[0]))
+		text = fmt.Sprintf("%s is within %s%s: the highest share of a limit is %s.", g.name, RuleTitle(set), asFar(missed), told(in[0]))
 	default:
-		return fmt.Sprintf("%s was not assessed under %s: %s.", g.name, RuleTitle(set), firstClause(missed[0].Why))
+		return fmt.Sprintf("%s was not assessed under %s: %s.%s", g.name, RuleTitle(set), firstClause(missed[0].Why), forInformation(missed))
 	}
 	return text + tally(all, over, open, missed)
+}
+
+// forInformation shows the highest share of a limit among findings that were not assessed.
+func forInformation(missed []Finding) string {
+	f := missed[0]
+	if !f.Value.Known() || !f.Limit.Known() {
+		return ""
+	}
+	value, limit := Apart(float64(f.Value), float64(f.Limit))
+	return fmt.Sprintf(" For information: %s on %s is %s %s of the %s, %s %% of a limit of %s %s.", QuantityName(f.Quantity, f.Order), f.Channel, value, f.Unit, f.Basis,
+		Sig(float64(f.Share)), limit, f.Unit)
 }
 
 func asFar(missed []Finding) string {
@@ -114,7 +121,7 @@ func asFar(missed []Finding) string {
 
 // told is one finding in words: "order 5 on V2, 95th percentile 3.82 % of the nominal voltage 230.9 V, between 3.76 % and 3.9 %
 // with 95 % confidence, limit 5 %, 76.4 % of it (10 min values over a week)".
-func (s *Survey) told(f Finding) string {
+func told(f Finding) string {
 	text := QuantityName(f.Quantity, f.Order) + " on " + f.Channel + ", "
 	if f.Indicative {
 		value, limit := Apart(float64(f.Value), float64(f.Limit))
@@ -127,13 +134,13 @@ func (s *Survey) told(f Finding) string {
 	return text
 }
 
-// Bounds says how firm a finding's value is: "between 3.76 % and 3.9 %"; "" when that is not known. What the bounds
-// hold is said once, in the method.
+// Bounds are the confidence bounds of a finding's percentile in words: "between 3.76 % and 3.9 %"; "" when they are not
+// known. They tell how firm the percentile is; what the result rests on is the declared uncertainty.
 func Bounds(f Finding) string {
-	if !f.ValueLow.Known() || !f.ValueHigh.Known() {
+	if !f.SampleLow.Known() || !f.SampleHigh.Known() {
 		return ""
 	}
-	low, high := Apart(float64(f.ValueLow), float64(f.ValueHigh))
+	low, high := Apart(float64(f.SampleLow), float64(f.SampleHigh))
 	return fmt.Sprintf("between %s %s and %s %s", low, f.Unit, high, f.Unit)
 }
 
@@ -211,74 +218,12 @@ func firstClause(why string) string {
 	return strings.TrimRight(strings.TrimSpace(head), ".")
 }
 
-// overText says how often the value was over the limit, where the series is at hand and reproduces the finding.
-func (s *Survey) overText(f Finding) string {
-	over, n := s.overShare(f)
-	if n == 0 {
+// overText says how often the value was over the limit, where that is known.
+func overText(f Finding) string {
+	if !f.Over.Known() {
 		return ""
 	}
-	return fmt.Sprintf(", over it in %s %% of %d valid 10 min intervals", Sig(100*float64(over)/float64(n)), n)
-}
-
-// overShare counts the 10 min intervals over the limit of a weekly finding. The series is only trusted when its
-// percentile is the finding's value: a rule set may define its total in a way that the series does not hold.
-func (s *Survey) overShare(f Finding) (over, n int) {
-	i := s.indexOf(f)
-	if s.Summary == nil || i < 0 || !strings.Contains(f.Statistic, "10 min") || len(s.Summary.Tens) == 0 {
-		return 0, 0
-	}
-	v := s.intervalValues(s.Judged[i])
-	for _, x := range v {
-		if x > float64(f.Limit) {
-			over++
-		}
-	}
-	if !reproduces(v, float64(f.Value)) {
-		return 0, 0
-	}
-	return over, len(v)
-}
-
-func (s *Survey) indexOf(f Finding) int {
-	if len(s.Judged) != len(s.Findings) {
-		return -1
-	}
-	return slices.IndexFunc(s.Findings, func(g Finding) bool {
-		return g.RuleSet == f.RuleSet && g.Channel == f.Channel && g.Quantity == f.Quantity && g.Order == f.Order && g.Statistic == f.Statistic
-	})
-}
-
-// intervalValues are the valid 10 min values of what a finding limits, in its unit.
-func (s *Survey) intervalValues(f limits.Finding) []float64 {
-	var out []float64
-	for c := range s.Summary.Channels {
-		if s.Summary.Channels[c].Role != f.Channel {
-			continue
-		}
-		for _, iv := range s.Summary.Tens {
-			if iv.Valid() {
-				out = append(out, findingValue(iv.Channels[c], f))
-			}
-		}
-	}
-	return out
-}
-
-func findingValue(l harmonics.Levels, f limits.Finding) float64 {
-	level := l.THC
-	if f.Order > 0 {
-		level = l.H[f.Order]
-	}
-	if math.IsNaN(f.BasisSize) {
-		return 100 * level / l.H[1]
-	}
-	return 100 * level / f.BasisSize
-}
-
-// reproduces reports whether want is one of the upper values of v, as a percentile by nearest rank is. A relative
-// difference of 1e-9 is rounding.
-func reproduces(v []float64, want float64) bool {
-	return slices.ContainsFunc(v, func(x float64) bool { return math.Abs(x-want) <= 1e-9*math.Abs(want) })
+	return fmt.Sprintf(", over it in %s %% of %d valid intervals", Sig(float64(f.Over)), f.N)
 }
 
 // unjudged describes a group to which no limit was applied.

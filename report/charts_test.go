@@ -125,7 +125,7 @@ func TestHeatMapAgainstIntervals(t *testing.T) {
 		want := math.NaN()
 		for _, iv := range s.Summary.Tens[i*fold : min((i+1)*fold, len(s.Summary.Tens))] {
 			for ch := range 3 {
-				if v := 100 * iv.Channels[ch].H[order] / (400 / math.Sqrt(3)) / limit * 100; iv.Valid() && !(v <= want) {
+				if v := 100 * iv.Channels[ch].H[order] / iv.Channels[ch].H[1] / limit * 100; iv.Valid() && !(v <= want) {
 					want = v
 				}
 			}

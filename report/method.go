@@ -3,8 +3,11 @@ package report
 import (
 	"fmt"
 	"math"
+	"slices"
+	"strings"
 
 	"wavetally/harmonics"
+	"wavetally/harmonics/limits"
 )
 
 // A MethodItem says how one thing was done, and which clause of which document says so.
@@ -117,20 +120,21 @@ func statisticsMethod(s *Survey) []MethodItem {
 		MethodItem{"Voltage events", "Rms over one cycle refreshed each half cycle: dip below 90 %, swell above 110 %, interruption below 5 % of nominal, hysteresis 2 %.", iec430 + ", 5.4 and 5.5"},
 		MethodItem{"Percentiles", "Nearest rank over valid intervals: the smallest value that at least the given share of all values does not exceed. Of 1008 values the 95th percentile is the 958th. Phases apart, never pooled.",
 			"the standards fix no rule; common practice"},
-		MethodItem{"Length of record", "A statistic over a day or a week needs that day or week. A shorter record gives the nearest value it has, marked indicative, and never the result 'within'.",
+		MethodItem{"Length of record", "A statistic over a day or a week needs that day or week, with at least 80 % of its intervals valid; below 95 % a remark says so. Of several weeks or days the worst governs. " +
+			"A shorter record gives the nearest value it has, marked indicative, and never the result 'within'.",
 			"IEEE 519-2022, clause 4; EN 50160:2010, 4"},
 	)
 }
 
 func surenessMethod(s *Survey) []MethodItem {
 	return []MethodItem{
-		{"Bounds", "Each value's bounds join the 95 % confidence bounds of the percentile, from order statistics without assuming a distribution, with the declared uncertainty of sensor and input. " +
-			"The order-statistic bounds take the intervals as independent; loads change slowly, so the true bounds are wider.",
-			"order-statistic intervals: textbooks of statistics; uncertainty: JCGM 100:2008, 4 (type B)"},
+		{"What a result rests on", "The value less and plus the uncertainty declared for its channel. within: value plus uncertainty is at or below the limit. exceeds: value less uncertainty is above it. " +
+			"undecided: the limit lies between, noise makes more than half the limit, a total lacks orders, or the record is shorter than the rule's period. " +
+			"not assessed: something needed is missing, the point is not one the limits are made for, or a doubt stops the verdict.", "JCGM 100:2008, 4.3 (type B); " + own},
 		{"Declared uncertainty", uncertaintyText(s), "site sheet"},
-		{"Noise floor", "For each channel and order, from the lines between harmonics. An order is 'above noise' when it stands clear of it. A limit closer than twice the noise floor cannot be decided. " + NoiseAssumption, own},
-		{"Results", "within: value and bounds at or below the limit. exceeds: value and bounds above it. undecided: the limit lies inside the bounds, the noise floor is above half the limit, or the record is too short. " +
-			"not assessed: something needed is missing or a doubt stops the verdict.", own},
+		{"Confidence bounds", "95 % bounds of a percentile from order statistics, without assuming a distribution: what another such period might show. They take the intervals as independent; loads change slowly, " +
+			"so they are the least that sampling leaves open. A whole period was counted, not sampled: they take no part in its result.", "order-statistic intervals: textbooks of statistics"},
+		{"Noise floor", "For each channel and order, from the lines between harmonics. An order is 'above noise' when it stands clear of it. " + NoiseAssumption, own},
 	}
 }
 
@@ -174,32 +178,83 @@ func plantMethod(s *Survey) []MethodItem {
 	return out
 }
 
+// limitsMethod tells each rule set that was applied: document, edition, where it is for, and how sure its numbers are.
 func limitsMethod(s *Survey) []MethodItem {
 	out := []MethodItem{}
-	seen := map[string]bool{}
+	for _, name := range appliedSets(s) {
+		item := MethodItem{Topic: "Limits: " + RuleTitle(name), Source: RuleTitle(name) + ", " + clauses(s.Findings, name)}
+		var parts []string
+		for _, r := range s.RuleSets {
+			if r.Name == name {
+				parts = ruleSetWords(r)
+				item.Source = strings.TrimRight(documentName(r)+", "+clauses(s.Findings, name), ", ")
+			}
+		}
+		if unverified(s.Findings, name) {
+			parts = append(parts, "Limits marked unverified are from memory and were not corroborated; check them against the purchased text.")
+		}
+		if len(parts) == 0 {
+			parts = []string{"Applied as the rule set of that name."}
+		}
+		item.Text = strings.Join(parts, " ")
+		out = append(out, item)
+	}
+	return out
+}
+
+// appliedSets are the names of the rule sets that were applied, those without a finding too.
+func appliedSets(s *Survey) []string {
+	var out []string
+	for _, r := range s.RuleSets {
+		out = once(out, r.Name)
+	}
 	for _, f := range s.Findings {
-		if seen[f.RuleSet] {
-			continue
+		out = once(out, f.RuleSet)
+	}
+	return out
+}
+
+// documentName is the document with its edition, which some names already hold.
+func documentName(r *limits.RuleSet) string {
+	if r.Edition == "" || strings.Contains(r.Document, r.Edition) {
+		return r.Document
+	}
+	return r.Document + ":" + r.Edition
+}
+
+func ruleSetWords(r *limits.RuleSet) []string {
+	var out []string
+	add := func(text string) {
+		if text != "" {
+			out = append(out, sentence(text))
 		}
-		seen[f.RuleSet] = true
-		text := "Applied as the rule set of that name"
-		if unverified(s.Findings, f.RuleSet) {
-			text += "; limits marked 'unverified' are from memory and were not corroborated"
+	}
+	add(r.Scope)
+	if len(r.AppliesAt) > 0 {
+		add("For points of these kinds: " + list(r.AppliesAt))
+	}
+	if r.Grouping != "" {
+		add("A harmonic is the " + r.Grouping)
+	}
+	if r.File != "" {
+		add("A rule file of the user's own")
+	}
+	for _, st := range r.Statistics {
+		if st.Information != "" {
+			add("Shown and not judged: " + st.String() + " of " + st.Quantity + " (" + st.Information + ")")
 		}
-		out = append(out, MethodItem{"Limits: " + RuleTitle(f.RuleSet), text + ".", RuleTitle(f.RuleSet) + ", " + clauses(s.Findings, f.RuleSet)})
+	}
+	for _, n := range r.Notes {
+		add(n)
 	}
 	return out
 }
 
 func unverified(findings []Finding, set string) bool {
-	for _, f := range findings {
-		if f.RuleSet == set && f.Unverified {
-			return true
-		}
-	}
-	return false
+	return slices.ContainsFunc(findings, func(f Finding) bool { return f.RuleSet == set && f.Unverified })
 }
 
+// clauses lists the clauses that the findings of a rule set cite.
 func clauses(findings []Finding, set string) string {
 	var out []string
 	for _, f := range findings {

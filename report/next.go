@@ -102,11 +102,16 @@ func decideOpen(s *Survey) string {
 			continue
 		}
 		apart := 100 * (float64(f.Value) - float64(f.Limit)) / float64(f.Limit)
-		name := QuantityName(f.Quantity, f.Order) + " on " + f.Channel
-		return action(fmt.Sprintf("Settle %s under %s, %s %% from its limit: a longer record narrows the percentile, a sensor of less uncertainty the value.", name, RuleTitle(f.RuleSet),
-			Sig(abs(apart))), "the limit lies outside the value's bounds.")
+		what := fmt.Sprintf("Settle %s on %s under %s, %s %% from its limit", QuantityName(f.Quantity, f.Order), f.Channel, RuleTitle(f.RuleSet), Sig(abs(apart)))
+		return action(sentence(what+": "+reasonAndRemedy(f.Why)), "a new survey gives it a result other than undecided.")
 	}
 	return ""
+}
+
+// reasonAndRemedy is the first reason of a finding with what would settle it, without what else was remarked.
+func reasonAndRemedy(why string) string {
+	parts := strings.SplitN(why, "; ", 3)
+	return strings.Join(parts[:min(2, len(parts))], "; ")
 }
 
 // heedCaution repeats the first caution.

@@ -36,24 +36,15 @@ func notExaminedOf(s *Survey) []string {
 
 // missedFindings sums up the findings that were not assessed, by rule set and reason.
 func missedFindings(s *Survey) []string {
-	type key struct{ set, why string }
-	n := map[key]int{}
-	where := map[key][]string{}
-	var order []key
+	var g grouping
 	for _, f := range s.Findings {
-		if f.Result != limits.NotAssessed {
-			continue
+		if f.Result == limits.NotAssessed {
+			g.add(f, firstClause(f.Why))
 		}
-		k := key{f.RuleSet, firstClause(f.Why)}
-		if n[k] == 0 {
-			order = append(order, k)
-		}
-		n[k]++
-		where[k] = once(where[k], f.Channel)
 	}
 	out := []string{}
-	for _, k := range order {
-		out = append(out, fmt.Sprintf("%s of %s on %s: %s", plural(n[k], "finding"), RuleTitle(k.set), list(where[k]), k.why))
+	for _, r := range g.rows {
+		out = append(out, fmt.Sprintf("%s of %s on %s: %s", plural(r.n, "finding"), RuleTitle(r.set), list(r.channels), r.why))
 	}
 	return out
 }

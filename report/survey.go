@@ -266,8 +266,14 @@ type Finding struct {
 	Order      int    `json:"order"`
 	Statistic  string `json:"statistic"`
 	Value      Number `json:"value"`
-	ValueLow   Number `json:"value_low"` // percentile confidence joined with the declared uncertainty; null when unknown
+	ValueLow   Number `json:"value_low"` // value less and plus the declared uncertainty: what the result rests on
 	ValueHigh  Number `json:"value_high"`
+	SampleLow  Number `json:"sample_low"` // 95 % confidence bounds of the percentile; null when unknown
+	SampleHigh Number `json:"sample_high"`
+	Over       Number `json:"over_pct"` // share of the intervals behind value that are above the limit; null when unknown
+	From       Number `json:"from_s"`   // the week or day that governs, else the whole record
+	To         Number `json:"to_s"`
+	Floor      Number `json:"noise_floor"` // what noise alone reads, in unit; null when unknown
 	Limit      Number `json:"limit"`
 	Unit       string `json:"unit"`
 	Share      Number `json:"share_pct"`

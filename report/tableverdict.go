@@ -2,9 +2,9 @@ package report
 
 import (
 	"fmt"
-	"math"
 	"regexp"
 	"slices"
+	"strings"
 
 	"wavetally/harmonics/limits"
 	"wavetally/harmonics/site"
@@ -17,14 +17,15 @@ var results = []string{limits.Exceeds, limits.Undecided, limits.NotAssessed, lim
 func verdictTable(s *Survey) Table {
 	rows := governing(s.Findings)
 	t := Table{Key: "verdict", Columns: []Column{text("what", "What"), text("channel", "On"), text("rule_set", "Rule set"), text("statistic", "Statistic"),
-		number("value", "Value", "%"), text("bounds", "Bounds, %"), number("limit", "Limit", "%"), number("share_pct", "Share of limit", "%"), text("result", "Result")}}
+		number("value", "Value", "%"), text("bounds", "95 % bounds, %"), number("limit", "Limit", "%"), number("share_pct", "Share of limit", "%"), text("result", "Result")}}
 	for _, f := range rows {
 		v, l := Apart(float64(f.Value), float64(f.Limit))
 		t.Rows = append(t.Rows, []Cell{word(title(f)), word(f.Channel), word(RuleTitle(f.RuleSet) + mark(f)), word(ShortStatistic(f.Statistic)),
 			{Text: v, Number: f.Value, IsNum: true}, word(boundsCell(f)), {Text: l, Number: f.Limit, IsNum: true}, value(f.Share), result(f.Result)})
 	}
 	t.Title = "Findings by share of the limit: " + resultCounts(s.Findings)
-	t.Notes = append(t.Notes, "One row for each order and total: the channel and statistic with the gravest result, and of those the highest share. The spreadsheet lists every finding.")
+	t.Notes = append(t.Notes, "One row for each order and total: the channel and statistic with the gravest result, and of those the highest share. The spreadsheet lists every finding.",
+		"95 % bounds: how firm the percentile is. Results rest on the value less and plus the uncertainty declared for its channel; what is close to a limit is listed below.")
 	t.Notes = append(t.Notes, bases(s.Findings)...)
 	t.Notes = append(t.Notes, marks(s.Findings)...)
 	return t
@@ -85,10 +86,10 @@ func graver(a, b Finding) bool {
 }
 
 func boundsCell(f Finding) string {
-	if !f.ValueLow.Known() || !f.ValueHigh.Known() {
+	if !f.SampleLow.Known() || !f.SampleHigh.Known() {
 		return Dash
 	}
-	low, high := Apart(float64(f.ValueLow), float64(f.ValueHigh))
+	low, high := Apart(float64(f.SampleLow), float64(f.SampleHigh))
 	return low + " to " + high
 }
 
@@ -156,36 +157,90 @@ func ShortStatistic(name string) string {
 	return short
 }
 
-// openTable says for each reason why findings stay open, and what would settle them.
+// openTable says why findings stay open and what would settle them, and what weakens those that were decided. Findings
+// whose reasons differ in numbers only share a row.
 func openTable(s *Survey) Table {
 	t := Table{Key: "open", Columns: []Column{text("result", "Result"), text("rule_set", "Rule set"), text("channels", "On"), number("n", "Findings", ""), wide("why", "Why, and what would settle it")}}
-	type key struct{ result, set, why string }
-	n := map[key]int{}
-	where := map[key][]string{}
-	var order []key
-	for _, f := range s.Findings {
-		if f.Result != limits.Undecided && f.Result != limits.NotAssessed {
+	open, weak := reasons(s.Findings), remarks(governing(s.Findings))
+	for _, r := range append(open, weak...) {
+		why := r.why
+		if r.differs {
+			why += " (Numbers of the first; they differ.)"
+		}
+		t.Rows = append(t.Rows, []Cell{result(r.result), word(RuleTitle(r.set)), word(list(r.channels)), whole(r.n), word(why)})
+	}
+	t.Title = "What stays open: " + plural(len(open), "reason")
+	if len(weak) > 0 {
+		t.Title += "; what weakens a result: " + plural(len(weak), "remark")
+	}
+	return t
+}
+
+// A reasonRow is findings of one rule set and result that share a reason.
+type reasonRow struct {
+	result, set string
+	why         string // as the first finding has it
+	differs     bool   // the reasons are not all the same to the letter
+	channels    []string
+	n           int
+}
+
+// reasons groups the findings that stay open.
+func reasons(findings []Finding) []reasonRow {
+	var g grouping
+	for _, f := range findings {
+		if f.Result == limits.Undecided || f.Result == limits.NotAssessed {
+			g.add(f, f.Why)
+		}
+	}
+	return g.rows
+}
+
+// remarks groups what stands beside findings that were decided, remark by remark.
+func remarks(findings []Finding) []reasonRow {
+	var g grouping
+	for _, f := range findings {
+		if f.Result != limits.Within && f.Result != limits.Exceeds || f.Why == "" {
 			continue
 		}
-		k := key{f.Result, f.RuleSet, f.Why}
-		if n[k] == 0 {
-			order = append(order, k)
+		for part := range strings.SplitSeq(f.Why, "; ") {
+			g.add(f, part)
 		}
-		n[k]++
-		where[k] = once(where[k], f.Channel)
 	}
-	for _, k := range order {
-		t.Rows = append(t.Rows, []Cell{result(k.result), word(RuleTitle(k.set)), word(list(where[k])), whole(n[k]), word(k.why)})
+	return g.rows
+}
+
+// A grouping gathers findings by rule set, result and reason, numbers aside.
+type grouping struct {
+	rows []reasonRow
+	at   map[string]int
+}
+
+var numbers = regexp.MustCompile(`[0-9]+(\.[0-9]+)?`)
+
+func (g *grouping) add(f Finding, why string) {
+	key := f.Result + "|" + f.RuleSet + "|" + numbers.ReplaceAllString(why, "#")
+	if g.at == nil {
+		g.at = map[string]int{}
 	}
-	t.Title = "What stays open: " + plural(len(t.Rows), "reason")
-	return t
+	i, seen := g.at[key]
+	if !seen {
+		i = len(g.rows)
+		g.at[key] = i
+		g.rows = append(g.rows, reasonRow{result: f.Result, set: f.RuleSet, why: why})
+	}
+	r := &g.rows[i]
+	r.n++
+	r.channels = once(r.channels, f.Channel)
+	r.differs = r.differs || r.why != why
 }
 
 // findingTable is every finding.
 func findingTable(s *Survey) Table {
 	t := Table{Key: "findings", Title: fmt.Sprintf("All %d findings", len(s.Findings)), Columns: []Column{
 		text("rule_set", "Rule set"), text("clause", "Clause"), text("channel", "Channel"), text("quantity", "Quantity"), number("order", "Order", ""),
-		text("statistic", "Statistic"), number("n", "Intervals", ""), number("value", "Value", "%"), number("value_low", "At least", "%"), number("value_high", "At most", "%"),
+		text("statistic", "Statistic"), number("n", "Intervals", ""), number("value", "Value", "%"), number("value_low", "Less uncertainty", "%"), number("value_high", "Plus uncertainty", "%"),
+		number("sample_low", "95 % bounds, from", "%"), number("sample_high", "95 % bounds, to", "%"),
 		number("limit", "Limit", "%"), number("share_pct", "Share of limit", "%"), number("over_pct", "Time over", "%"), text("result", "Result"), text("basis", "Per cent of"), wide("why", "Why")}}
 	for _, f := range s.Findings {
 		order := blank
@@ -193,19 +248,10 @@ func findingTable(s *Survey) Table {
 			order = whole(f.Order)
 		}
 		t.Rows = append(t.Rows, []Cell{word(RuleTitle(f.RuleSet) + mark(f)), word(f.Clause), word(f.Channel), word(f.Quantity), order, word(f.Statistic), whole(f.N),
-			value(f.Value), value(f.ValueLow), value(f.ValueHigh), value(f.Limit), value(f.Share), s.overCell(f), result(f.Result), word(f.Basis), word(f.Why)})
+			value(f.Value), value(f.ValueLow), value(f.ValueHigh), value(f.SampleLow), value(f.SampleHigh), value(f.Limit), value(f.Share), value(f.Over), result(f.Result), word(f.Basis), word(f.Why)})
 	}
 	t.Notes = marks(s.Findings)
 	return t
-}
-
-// overCell is the share of valid 10 min intervals over the limit.
-func (s *Survey) overCell(f Finding) Cell {
-	over, n := s.overShare(f)
-	if n == 0 {
-		return blank
-	}
-	return value(Number(100 * float64(over) / float64(n)))
 }
 
 // noiseTable lists the orders whose noise hides a harmonic at the limit, and how long a record would show it.
@@ -214,7 +260,7 @@ func noiseTable(s *Survey) Table {
 		number("time", "Record needed", "s"), text("rule_set", "Rule set")}, Notes: []string{NoiseAssumption}}
 	window := float64(s.Recording.Windows.Cycles) / float64(s.Recording.Frequency.Mean)
 	for _, f := range governingByChannel(s.Findings) {
-		floor := s.floorOf(f)
+		floor := float64(f.Floor)
 		if !(2*floor > float64(f.Limit)) {
 			continue
 		}
@@ -246,20 +292,6 @@ func governingByChannel(findings []Finding) []Finding {
 		}
 	}
 	return out
-}
-
-// floorOf is the noise floor of a finding's order in per cent of the finding's basis; NaN when unknown.
-func (s *Survey) floorOf(f Finding) float64 {
-	i := s.indexOf(f)
-	ch := s.channel(f.Channel)
-	if ch == nil || i < 0 || ch.harmonic(f.Order) == nil {
-		return math.NaN()
-	}
-	basis := s.Judged[i].BasisSize
-	if math.IsNaN(basis) {
-		basis = float64(ch.Fundamental.RMS)
-	}
-	return 100 * float64(ch.harmonic(f.Order).Floor) / basis
 }
 
 func (s *Survey) channel(name string) *Channel {

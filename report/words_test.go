@@ -104,12 +104,12 @@ func TestVerdict(t *testing.T) {
 }
 
 func TestFirmness(t *testing.T) {
-	f := report.Finding{Statistic: "95th percentile of 10 min values over a week", Value: 4.8, ValueLow: 4.5, ValueHigh: 5.1, Limit: 5, Unit: "%"}
+	f := report.Finding{Statistic: "95th percentile of 10 min values over a week", Value: 4.8, SampleLow: 4.5, SampleHigh: 5.1, Limit: 5, Unit: "%"}
 	const want = "95th percentile 4.8 %, between 4.5 % and 5.1 % with 95 % confidence, limit 5 %"
 	if got := report.Firmness(f); got != want {
 		t.Errorf("%q, want %q", got, want)
 	}
-	f.ValueLow = report.NaN
+	f.SampleLow = report.NaN
 	if got := report.Firmness(f); strings.Contains(got, "between") {
 		t.Errorf("%q without bounds", got)
 	}
@@ -119,8 +119,8 @@ func TestFirmness(t *testing.T) {
 func TestTitlesTellValueFromLimit(t *testing.T) {
 	in := fixture.TinyInputs()
 	in.Findings = []limits.Finding{{RuleSet: "en-50160", Channel: "V1", Quantity: "harmonic", Order: 5, Statistic: "95th percentile of 10 min values over a week",
-		Value: 6.004, ValueLow: math.NaN(), ValueHigh: math.NaN(), Limit: 6, Share: 100.0667, Unit: "%", Basis: "fundamental", BasisSize: math.NaN(), Result: limits.Exceeds}}
-	if got := report.Build(in).Headline.Answers[1]; !strings.Contains(got, "6.004 %") {
+		Value: 6.004, SampleLow: math.NaN(), SampleHigh: math.NaN(), OverPct: math.NaN(), Limit: 6, Share: 100.0667, Unit: "%", Basis: "fundamental", BasisSize: math.NaN(), Result: limits.Exceeds}}
+	if got := report.Build(in).Headline.Answers[0]; !strings.Contains(got, "6.004 %") {
 		t.Error(got)
 	}
 }

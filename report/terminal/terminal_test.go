@@ -6,6 +6,7 @@ import (
 	"os"
 	"path/filepath"
 	"strings"
+	"sync"
 	"testing"
 	"unicode/utf8"
 
@@ -18,9 +19,9 @@ import (
 
 var update = flag.Bool("update", false, "rewrite the golden files")
 
-func surveys() map[string]*report.Survey {
+var surveys = sync.OnceValue(func() map[string]*report.Survey {
 	return map[string]*report.Survey{"week": fixture.Week(), "short": fixture.Short(), "tiny": fixture.Tiny()}
-}
+})
 
 func write(t *testing.T, s *report.Survey, width int) string {
 	t.Helper()
@@ -76,7 +77,7 @@ func TestFitsAScreen(t *testing.T) {
 
 func TestNarrowAndAbsurdWidths(t *testing.T) {
 	for _, width := range []int{-1, 0, 20, 40, 60, 200, 1000} {
-		for _, l := range strings.Split(write(t, fixture.Week(), width), "\n") {
+		for _, l := range strings.Split(write(t, surveys()["week"], width), "\n") {
 			if limit := max(40, min(100, width)) - 1; utf8.RuneCountInString(l) > limit {
 				t.Errorf("width %d: %q", width, l)
 			}
