@@ -13,8 +13,6 @@ import (
 var pow10 = [...]float64{1e0, 1e1, 1e2, 1e3, 1e4, 1e5, 1e6, 1e7, 1e8, 1e9, 1e10, 1e11, 1e12, 1e13, 1e14, 1e15, 1e16,
 	1e17, 1e18, 1e19, 1e20, 1e21, 1e22}
 
-const maxExact = len(pow10) - 1
-
 // Scan reads the decimal number that starts at b[i], with mark as its decimal mark, and multiplies it by ten to the
 // power of shift before rounding, once, to the nearest float64. It returns the index of the first byte after the
 // number. It reports false, and no more, where it finds no digit or more digits than its fast ways hold; [Cell] then
@@ -23,68 +21,58 @@ const maxExact = len(pow10) - 1
 // The fast way is exact: a mantissa up to 2^53 and a power of ten up to 10^22 are both float64 values, and their
 // quotient or product is rounded once (Clinger, "How to read floating point numbers accurately", 1990).
 func Scan(b []byte, i int, mark byte, shift int) (float64, int, bool) {
-	first := i
+	s := b[i:]
+	j := 0
 	negative := false
-	if i < len(b) && (b[i] == '-' || b[i] == '+') {
-		negative = b[i] == '-'
-		i++
+	if len(s) > 0 && (s[0] == '-' || s[0] == '+') {
+		negative = s[0] == '-'
+		j = 1
 	}
 	var mantissa uint64
-	start := i
-	for i < len(b) {
-		d := b[i] - '0'
-		if d > 9 {
-			break
-		}
-		mantissa = mantissa*10 + uint64(d)
-		i++
+	digits := -j
+	for ; j < len(s) && s[j]-'0' <= 9; j++ {
+		mantissa = mantissa*10 + uint64(s[j]-'0')
 	}
-	digits := i - start
-	if i < len(b) && b[i] == mark {
-		i++
-		start = i
-		for i < len(b) {
-			d := b[i] - '0'
-			if d > 9 {
-				break
-			}
-			mantissa = mantissa*10 + uint64(d)
-			i++
+	digits += j
+	if j < len(s) && s[j] == mark {
+		j++
+		start := j
+		for ; j < len(s) && s[j]-'0' <= 9; j++ {
+			mantissa = mantissa*10 + uint64(s[j]-'0')
 		}
-		digits += i - start
-		shift -= i - start
+		digits += j - start
+		shift -= j - start
 	}
 	if digits == 0 || digits > 19 { // 19 digits fit into a uint64, more may not
-		return 0, first, false
+		return 0, i, false
 	}
-	if i < len(b) && b[i]|0x20 == 'e' {
-		exponent, next, ok := scanExponent(b, i+1)
+	if j < len(s) && s[j]|0x20 == 'e' {
+		exponent, next, ok := scanExponent(s, j+1)
 		if !ok {
-			return 0, first, false
+			return 0, i, false
 		}
 		shift += exponent
-		i = next
+		j = next
 	}
-	value, ok := compose(mantissa, shift)
+	value, ok := float64(mantissa), true
+	if mantissa <= 1<<53 && uint(-shift) < uint(len(pow10)) {
+		value /= pow10[-shift]
+	} else {
+		value, ok = compose(mantissa, shift)
+	}
 	if negative {
 		value = -value
 	}
-	return value, i, ok
+	return value, i + j, ok
 }
 
-// compose returns mantissa × 10^exponent, rounded once.
+// compose returns mantissa × 10^exponent, rounded once, for what does not go by one division.
 func compose(mantissa uint64, exponent int) (float64, bool) {
-	if mantissa <= 1<<53 {
-		switch {
-		case exponent == 0:
-			return float64(mantissa), true
-		case exponent < 0 && exponent >= -maxExact:
-			return float64(mantissa) / pow10[-exponent], true
-		case mantissa == 0:
-			return 0, true
-		case exponent > 0 && exponent <= maxExact:
-			return float64(mantissa) * pow10[exponent], true
-		}
+	if mantissa <= 1<<53 && exponent > 0 && exponent < len(pow10) {
+		return float64(mantissa) * pow10[exponent], true
+	}
+	if mantissa == 0 {
+		return 0, true
 	}
 	var text [32]byte
 	s := strconv.AppendUint(text[:0], mantissa, 10)

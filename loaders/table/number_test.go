@@ -165,3 +165,17 @@ func FuzzCell(f *testing.F) {
 		}
 	})
 }
+
+func BenchmarkScan(b *testing.B) {
+	text := []byte("-284.2125,")
+	for b.Loop() {
+		table.Scan(text, 0, '.', 0)
+	}
+}
+
+func BenchmarkParseFloat(b *testing.B) {
+	text := []byte("-284.2125,")
+	for b.Loop() {
+		strconv.ParseFloat(string(text[:9]), 64)
+	}
+}

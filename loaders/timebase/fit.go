@@ -104,8 +104,8 @@ func roughInterval(points []Point) float64 {
 	}
 }
 
-// longestRun is the longest stretch of rows whose steps are even, within the resolution, a share of slack, and twice
-// the jitter that nine steps in ten keep to.
+// longestRun is the longest stretch of rows whose steps are even, within the resolution, a share of slack, and where
+// stamps jitter beyond these, four times what nine steps in ten keep to.
 func longestRun(points []Point, interval, slack float64) []Point {
 	offs := make([]float64, len(points)-1)
 	for i := range offs {
@@ -113,12 +113,16 @@ func longestRun(points []Point, interval, slack float64) []Point {
 	}
 	sorted := slices.Clone(offs)
 	slices.Sort(sorted)
-	jitter := 2 * sorted[len(sorted)*9/10]
+	usual := sorted[len(sorted)*9/10]
 	best, start := points[:0], 0
 	for i := 1; i <= len(points); i++ {
 		if i < len(points) {
 			a, b := points[i-1], points[i]
-			if offs[i-1] <= max(0.75*interval+max(a.Step, b.Step), jitter)+slack*interval*float64(b.Row-a.Row) {
+			allowed := 0.75*interval + max(a.Step, b.Step)
+			if usual > 2*allowed {
+				allowed = 4 * usual
+			}
+			if offs[i-1] <= allowed+slack*interval*float64(b.Row-a.Row) {
 				continue
 			}
 		}
