@@ -203,7 +203,10 @@ func (g *generator) addHarmonic(row []float64, h Harmonic) {
 		return
 	}
 	for i := range row {
-		f := 1 + h.Depth*math.Cos(2*math.Pi*h.ModHz*g.times[i]+radians(h.ModAngle))
+		f := 1.0
+		if h.Depth != 0 {
+			f += h.Depth * math.Cos(2*math.Pi*h.ModHz*g.times[i]+radians(h.ModAngle))
+		}
 		if h.Load != nil {
 			f *= h.Load(g.times[i])
 		}
