@@ -97,7 +97,16 @@
 //	interval   = "10 min"                      # or "3 s", with percentile = 99 and period = "day" only
 //	percentile = 95                            # 100 is the maximum
 //	period     = "week"                        # or "day"
-//	factor     = 1.0                           # multiplies the limits; optional
+//	clause     = "4.3"
+//	status     = "read from the document"
+//	source     = "PDF of 2026-03-01"
+//
+//	[[statistic]]
+//	quantity   = "current"
+//	interval   = "3 s"
+//	percentile = 99
+//	period     = "day"
+//	factor     = 1.5                           # optional: multiplies the limits
 //	clause     = "4.3"
 //	status     = "read from the document"
 //	source     = "PDF of 2026-03-01"

@@ -1,6 +1,7 @@
 package limits
 
 import (
+	"cmp"
 	"fmt"
 	"maps"
 	"math"
@@ -13,6 +14,7 @@ import (
 // A problem is what is wrong at a path of a rule file.
 type problem struct {
 	path, msg string
+	missing   bool // something is not there
 }
 
 // A document collects what is wrong with a rule file while it is taken apart.
@@ -21,16 +23,25 @@ type document struct {
 }
 
 func (d *document) fail(path, format string, args ...any) {
-	d.problems = append(d.problems, problem{path, fmt.Sprintf(format, args...)})
+	d.problems = append(d.problems, problem{path: path, msg: fmt.Sprintf(format, args...)})
 }
 
-// first returns the problem that comes first in the file.
+func (d *document) missing(path, format string, args ...any) {
+	d.problems = append(d.problems, problem{path: path, msg: fmt.Sprintf(format, args...), missing: true})
+}
+
+// first returns the problem that comes first in the file. What is missing goes last: it may be there, misspelt.
 func (d *document) first(file string, at lines) error {
 	if len(d.problems) == 0 {
 		return nil
 	}
-	p := slices.MinFunc(d.problems, func(a, b problem) int { return at.of(a.path) - at.of(b.path) })
-	return &wave.ParseError{File: file, Line: at.of(p.path), Msg: p.msg}
+	p := slices.MinFunc(d.problems, func(a, b problem) int {
+		if a.missing != b.missing {
+			return map[bool]int{true: 1, false: -1}[a.missing]
+		}
+		return cmp.Compare(at.of(a.path), at.of(b.path))
+	})
+	return &wave.ParseError{File: file, Line: at.of(p.path), Msg: shorten(p.msg)}
 }
 
 // A node is one table of the file. Its methods take keys out; done then complains about those that nobody asked for.
@@ -74,7 +85,7 @@ func (n *node) need(key, example string) string {
 }
 
 func (n *node) missing(key, example string) {
-	n.doc.fail(n.path, "%s is missing%s; write %s = %s", key, n.place(), key, example)
+	n.doc.missing(n.path, "%s is missing%s; write %s = %s", key, n.place(), key, example)
 }
 
 // place names the table for a message.

@@ -66,7 +66,19 @@ func parseOrders(text string) (Orders, error) {
 			return bad(fmt.Sprintf("what does %q mean", w))
 		}
 	}
+	if o.Total == "" && !o.any() {
+		return bad("holds no order")
+	}
 	return o, nil
+}
+
+func (o Orders) any() bool {
+	for h := o.From; h <= o.To; h++ {
+		if o.Contains(h) {
+			return true
+		}
+	}
+	return false
 }
 
 func (o Orders) String() string { return o.Text }

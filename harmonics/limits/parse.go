@@ -34,8 +34,8 @@ const (
 // parse reads a rule file; name is the file's, for errors.
 func parse(text, name string) (*RuleSet, error) {
 	text = strings.TrimPrefix(text, "\ufeff")
-	if !utf8.ValidString(text) {
-		return nil, &wave.ParseError{File: name, Line: invalidLine(text), Msg: "is not UTF-8 text; save the rule file as UTF-8"}
+	if err := checkText(text, name); err != nil {
+		return nil, err
 	}
 	var keys map[string]any
 	if _, err := toml.Decode(text, &keys); err != nil {
@@ -49,13 +49,22 @@ func parse(text, name string) (*RuleSet, error) {
 	return r, nil
 }
 
-func invalidLine(text string) int {
-	for i, line := range strings.Split(text, "\n") {
-		if !utf8.ValidString(line) {
-			return i + 1
+// checkText refuses what cannot be a rule file before it is taken apart.
+func checkText(text, name string) error {
+	if len(text) > largest {
+		return &wave.ParseError{File: name, Msg: fmt.Sprintf("is larger than %d kB; this is no rule file", largest>>10)}
+	}
+	n := 0
+	for line := range strings.Lines(text) {
+		n++
+		switch {
+		case !utf8.ValidString(line):
+			return &wave.ParseError{File: name, Line: n, Msg: "is not UTF-8 text; save the rule file as UTF-8"}
+		case len(line) > longestLine:
+			return &wave.ParseError{File: name, Line: n, Msg: fmt.Sprintf("is longer than %d bytes; break the line, or name a rule file if this is none", longestLine)}
 		}
 	}
-	return 0
+	return nil
 }
 
 func syntaxError(err error, name string) error {
@@ -70,7 +79,7 @@ func syntaxError(err error, name string) error {
 	if p.LastKey != "" {
 		msg = p.LastKey + ": " + msg
 	}
-	return &wave.ParseError{File: name, Line: p.Position.Line, Msg: msg, Err: err}
+	return &wave.ParseError{File: name, Line: p.Position.Line, Msg: shorten(msg), Err: err}
 }
 
 var namePattern = regexp.MustCompile(`^[a-z0-9][a-z0-9.-]*$`)
@@ -113,7 +122,7 @@ func readRuleSet(n *node) *RuleSet {
 // checkWhole wants parts that belong together.
 func checkWhole(n *node, r *RuleSet) {
 	if len(r.tables) == 0 {
-		n.doc.fail("", "there is no [[table]], so nothing could be judged; add one")
+		n.doc.missing("", "there is no [[table]], so nothing could be judged; add one")
 	}
 	ids := map[string]bool{}
 	for i, t := range r.tables {
@@ -127,11 +136,12 @@ func checkWhole(n *node, r *RuleSet) {
 			judged = judged || s.Quantity == t.quantity
 		}
 		if !judged && t.quantity != "" {
-			n.doc.fail(path, "there is no [[statistic]] with quantity = %q, so this table is never used; add one", t.quantity)
+			n.doc.missing(path, "there is no [[statistic]] with quantity = %q, so this table is never used; add one", t.quantity)
 		}
 		for _, u := range r.tables[:i] {
 			if u.quantity == t.quantity && u.voltage.overlaps(t.voltage) {
 				n.doc.fail(path, "table %q holds for voltages that table %q holds for too; keep their voltage ranges apart", t.id, u.id)
+				break
 			}
 		}
 	}
@@ -182,10 +192,13 @@ func readTable(n *node) table {
 	if t.rowsBy == byRatio && t.quantity == voltage {
 		n.fail("rows_by", "%q goes with quantity \"current\" only", t.rowsBy)
 	}
-	if t.rowsBy == byOrder {
+	switch t.rowsBy {
+	case byOrder:
 		readByOrder(n, &t)
-	} else {
+	case byVoltage, byRatio:
 		readGrid(n, &t)
+	default:
+		return t // what the rest should be is not known
 	}
 	n.done()
 	return t
@@ -205,16 +218,17 @@ func (n *node) span(key string) Span {
 
 func readByOrder(n *node, t *table) {
 	r := row{Evidence: t.Evidence}
+	var given taken
 	for _, e := range n.nodes("limits") {
 		c := cell{orders: e.orders("orders"), Evidence: e.evidence(t.Evidence)}
 		readLimit(e, &c)
 		e.checkTotal(c.orders, t.basis)
-		checkTwice(e, r.cells, c.orders)
+		given.add(e, c.orders)
 		r.cells = append(r.cells, c)
 		e.done()
 	}
 	if len(r.cells) == 0 {
-		n.doc.fail(n.path, "table %q has no limits; write limits = [ { orders = \"5\", limit = 6.0 } ]", t.id)
+		n.doc.missing(n.path, "table %q has no limits; write limits = [ { orders = \"5\", limit = 6.0 } ]", t.id)
 	}
 	t.rows = []row{r}
 }
@@ -274,23 +288,32 @@ func (n *node) formulaFor(text string, c *cell) {
 
 func positiveFinite(v float64) bool { return v > 0 && v < 1e9 }
 
-// checkTwice complains about an order that has a limit already.
-func checkTwice(n *node, before []cell, o Orders) {
-	for _, c := range before {
-		if o.Total != "" && c.orders.Total != "" {
+// taken tells, by order, the entry that gives an order its limit; [0] is the total.
+type taken [topOrder + 1]string
+
+// add complains about an order that has a limit already.
+func (t *taken) add(n *node, o Orders) {
+	if o.Total != "" {
+		if t[0] != "" {
 			n.doc.fail(n.path, "%q: the table has a limit for a total already; remove one", o.Text)
+		}
+		t[0] = o.Text
+		return
+	}
+	for h := 2; h <= topOrder; h++ {
+		if !o.Contains(h) {
+			continue
+		}
+		if t[h] != "" {
+			n.doc.fail(n.path, "order %d of %q has a limit already, in %q; an order has one limit", h, o.Text, t[h])
 			return
 		}
-		for h := 2; h <= topOrder; h++ {
-			if c.orders.Contains(h) && o.Contains(h) {
-				n.doc.fail(n.path, "order %d of %q has a limit already, in %q; an order has one limit", h, o.Text, c.orders.Text)
-				return
-			}
-		}
+		t[h] = o.Text
 	}
 }
 
 func readGrid(n *node, t *table) {
+	var given taken
 	for i, text := range n.texts("columns") {
 		o, err := parseOrders(text)
 		path := fmt.Sprintf("%s.columns[%d]", n.path, i)
@@ -300,7 +323,7 @@ func readGrid(n *node, t *table) {
 		}
 		at := &node{doc: n.doc, path: path}
 		at.checkTotal(o, t.basis)
-		checkTwice(at, asCells(t.columns), o)
+		given.add(at, o)
 		t.columns = append(t.columns, o)
 	}
 	if len(t.columns) == 0 {
@@ -310,31 +333,22 @@ func readGrid(n *node, t *table) {
 		t.rows = append(t.rows, readRow(e, t))
 	}
 	if len(t.rows) == 0 {
-		n.doc.fail(n.path, "table %q has no rows; write rows = [ { %s = \"<20\", limits = [4.0, 5.0] } ]", t.id, t.rowsBy)
+		n.doc.missing(n.path, "table %q has no rows; write rows = [ { %s = \"<20\", limits = [4.0, 5.0] } ]", t.id, t.rowsBy)
 	}
-}
-
-func asCells(columns []Orders) []cell {
-	var out []cell
-	for _, o := range columns {
-		out = append(out, cell{orders: o})
-	}
-	return out
 }
 
 func readRow(n *node, t *table) row {
 	r := row{Evidence: n.evidence(t.Evidence)}
-	if t.rowsBy == byVoltage || t.rowsBy == byRatio {
-		n.need(t.rowsBy, `"20 to <50"`)
-		r.span = n.span(t.rowsBy)
-	}
+	n.need(t.rowsBy, `"20 to <50"`)
+	r.span = n.span(t.rowsBy)
 	for _, before := range t.rows {
 		if before.span.overlaps(r.span) {
 			n.doc.fail(n.path, "row %q holds what row %q holds too; keep the rows apart", r.span.Text, before.span.Text)
+			break
 		}
 	}
 	limits := n.numbers("limits")
-	if len(limits) != len(t.columns) {
+	if len(limits) != len(t.columns) && len(t.columns) > 0 {
 		n.doc.fail(join(n.path, "limits"), "limits has %d numbers for %d columns; give one for each", len(limits), len(t.columns))
 	}
 	for i := range min(len(limits), len(t.columns)) {

@@ -81,3 +81,13 @@ func edits(a, b string) int {
 	}
 	return row[len(b)]
 }
+
+// shorten takes the middle out of a message that quotes too much of a file.
+func shorten(msg string) string {
+	const most = 400
+	r := []rune(msg)
+	if len(r) <= most {
+		return msg
+	}
+	return string(r[:most/2]) + " … " + string(r[len(r)-most/2:])
+}
