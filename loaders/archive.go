@@ -86,7 +86,7 @@ func (gzipFS) Open(name string) (fs.File, error) {
 	z, err := gzip.NewReader(f)
 	if err != nil {
 		f.Close()
-		return nil, fmt.Errorf("%s: it is no gzip file inside: %w", filepath.Base(name)+".gz", err)
+		return nil, err
 	}
 	return &packedFile{Reader: &ratioReader{r: z, packed: info.Size()}, close: f.Close, info: unpackedInfo{info, filepath.Base(name), -1}}, nil
 }
@@ -124,7 +124,7 @@ func (z zipFS) Open(name string) (fs.File, error) {
 		body, err := f.Open()
 		if err != nil {
 			r.Close()
-			return nil, fmt.Errorf("%s/%s: it cannot be unpacked: %w", filepath.Base(z.path), name, err)
+			return nil, err
 		}
 		return &packedFile{Reader: &ratioReader{r: body, packed: int64(f.CompressedSize64)}, close: r.Close, info: f.FileInfo()}, nil
 	}

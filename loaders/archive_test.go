@@ -14,6 +14,7 @@ import (
 
 	"wavetally/harmonics/wave"
 	"wavetally/loaders"
+	"wavetally/loaders/comtrade"
 )
 
 func gzipped(t *testing.T, text string) []byte {
@@ -236,5 +237,49 @@ func TestExpand(t *testing.T) {
 	}
 	if _, err := loaders.Expand([]string{filepath.Join(dir, "old.csv")}); err == nil {
 		t.Error("an empty folder gives no error")
+	}
+}
+
+// TestComtradeWhereverItLies opens one recording as a folder's pair of files, in a zip, packed one by one, and as one
+// file, and must find the same samples.
+func TestComtradeWhereverItLies(t *testing.T) {
+	text := write(t, "a.csv", []byte(table([]string{"V1", "V2"}, 0, 3000, clock)))
+	src, err := loaders.Open([]string{text}, loaders.Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	want := stretches(t, src, "V1 V2")
+	dir := t.TempDir()
+	if err := comtrade.Write(filepath.Join(dir, "rec"), src, comtrade.Float32); err != nil {
+		t.Fatal(err)
+	}
+	cfg, _ := os.ReadFile(filepath.Join(dir, "rec.cfg"))
+	dat, _ := os.ReadFile(filepath.Join(dir, "rec.dat"))
+	single := t.TempDir()
+	if err := comtrade.Write(filepath.Join(single, "rec.cff"), src, comtrade.Float32); err != nil {
+		t.Fatal(err)
+	}
+	packedPair := t.TempDir()
+	os.WriteFile(filepath.Join(packedPair, "rec.cfg.gz"), gzipped(t, string(cfg)), 0o600)
+	os.WriteFile(filepath.Join(packedPair, "REC.DAT.gz"), gzipped(t, string(dat)), 0o600)
+	inZip := filepath.Dir(write(t, "rec.zip", zipped(t, map[string]string{"x/REC.CFG": string(cfg), "x/rec.dat": string(dat)})))
+	for _, dir := range []string{dir, single, packedPair, inZip} {
+		paths, err := loaders.Expand([]string{dir})
+		if err != nil {
+			t.Fatal(err)
+		}
+		src, err := loaders.Open(paths, loaders.Options{})
+		if err != nil {
+			t.Errorf("%v: %v", paths, err)
+			continue
+		}
+		if got := stretches(t, src, "V1 V2"); len(got) != 1 || got[0] != want[0] {
+			t.Errorf("%v: samples are in %v, want %v", paths, got, want)
+		}
+		for _, f := range src.Header().Files {
+			if _, err := os.Stat(f.Path); err != nil {
+				t.Errorf("%v: file %q is not on disk", paths, f.Path)
+			}
+		}
 	}
 }

@@ -5,6 +5,7 @@ package loaders
 import (
 	"errors"
 	"fmt"
+	"io"
 	"io/fs"
 	"iter"
 	"os"
@@ -12,6 +13,7 @@ import (
 	"strings"
 
 	"wavetally/harmonics/wave"
+	"wavetally/loaders/comtrade"
 	"wavetally/loaders/csv"
 	"wavetally/loaders/input"
 	"wavetally/loaders/wav"
@@ -29,6 +31,7 @@ type format struct {
 
 // formats are tried in this order; a table of text, which has no mark of its own, comes last.
 var formats = []format{
+	{"COMTRADE", comtrade.Open},
 	{"WAV", wav.Open},
 	{"XLSX", xlsx.Open},
 	{"CSV", csv.Open},
@@ -116,8 +119,11 @@ func cutSuffixFold(s, suffix string) (string, bool) {
 // withoutCompanions leaves out the .dat files whose .cfg is among the items, and files named twice.
 func withoutCompanions(items []item) []item {
 	stem := func(it item) (string, string) {
-		ext := filepath.Ext(it.path)
-		return it.disk[:len(it.disk)-len(filepath.Ext(it.disk))] + "\x00" + strings.ToLower(strings.TrimSuffix(it.path, ext)), strings.ToLower(ext)
+		name, ext := strings.ToLower(it.path), strings.ToLower(filepath.Ext(it.path))
+		if z, ok := it.opt.FS.(zipFS); ok {
+			name = z.path + "\x00" + name
+		}
+		return strings.TrimSuffix(name, ext), ext
 	}
 	configured, seen := map[string]bool{}, map[string]bool{}
 	for _, it := range items {
@@ -140,6 +146,9 @@ func withoutCompanions(items []item) []item {
 
 // open opens an item with the first format that knows it.
 func (it item) open() (wave.Source, error) {
+	if err := it.unpacks(); err != nil {
+		return nil, err
+	}
 	var other *wave.NotThisFormatError
 	for _, f := range formats {
 		src, err := f.open(it.path, it.opt)
@@ -155,6 +164,22 @@ func (it item) open() (wave.Source, error) {
 	}
 	return nil, &wave.NotThisFormatError{File: it.name, Format: "a recording that can be read",
 		Msg: fmt.Sprintf("it is none of COMTRADE, WAV and XLSX, and as a table of text %s; export the waveforms as one of these", other.Msg)}
+}
+
+// unpacks makes sure that the first bytes of a packed file can be had, before formats are tried on it.
+func (it item) unpacks() error {
+	if it.opt.FS == nil {
+		return nil
+	}
+	f, err := it.opt.Open(it.path)
+	if err == nil {
+		defer f.Close()
+		_, err = io.ReadFull(f, make([]byte, 512))
+	}
+	if err == nil || err == io.EOF || err == io.ErrUnexpectedEOF {
+		return nil
+	}
+	return &wave.ParseError{File: it.name, Err: err, Msg: fmt.Sprintf("it cannot be unpacked (%v); copy it again from where it came from", err)}
 }
 
 // named puts the archive's name before that of the file in it.
