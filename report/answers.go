@@ -96,19 +96,18 @@ func answer(s *Survey, g group, set string) string {
 	case len(in) > 0:
 		text = fmt.Sprintf("%s is within %s%s: the highest share of a limit is %s.", g.name, RuleTitle(set), asFar(missed), told(in[0]))
 	default:
-		return fmt.Sprintf("%s was not assessed under %s: %s.%s", g.name, RuleTitle(set), firstClause(missed[0].Why), forInformation(missed))
+		return fmt.Sprintf("%s was not assessed under %s: %s. %s", g.name, RuleTitle(set), firstClause(missed[0].Why), forInformation(s, g, missed[0]))
 	}
 	return text + tally(all, over, open, missed)
 }
 
-// forInformation shows the highest share of a limit among findings that were not assessed.
-func forInformation(missed []Finding) string {
-	f := missed[0]
+// forInformation shows what there is where nothing was assessed: the highest share of a limit, else the distortion.
+func forInformation(s *Survey, g group, f Finding) string {
 	if !f.Value.Known() || !f.Limit.Known() {
-		return ""
+		return "For information: " + distortion(s, g) + "."
 	}
 	value, limit := Apart(float64(f.Value), float64(f.Limit))
-	return fmt.Sprintf(" For information: %s on %s is %s %s of the %s, %s %% of a limit of %s %s.", QuantityName(f.Quantity, f.Order), f.Channel, value, f.Unit, f.Basis,
+	return fmt.Sprintf("For information: %s on %s is %s %s of the %s, %s %% of a limit of %s %s.", QuantityName(f.Quantity, f.Order), f.Channel, value, f.Unit, f.Basis,
 		Sig(float64(f.Share)), limit, f.Unit)
 }
 
@@ -228,6 +227,11 @@ func overText(f Finding) string {
 
 // unjudged describes a group to which no limit was applied.
 func unjudged(s *Survey, g group) string {
+	return fmt.Sprintf("%s, no limit applied: %s.", g.name, distortion(s, g))
+}
+
+// distortion is the THD of a group's most distorted channel, and its largest order.
+func distortion(s *Survey, g group) string {
 	var worst *Channel
 	for _, c := range g.channels(s) {
 		if c.THD.Mean.Known() && (worst == nil || c.THD.Mean > worst.THD.Mean) {
@@ -235,7 +239,7 @@ func unjudged(s *Survey, g group) string {
 		}
 	}
 	if worst == nil {
-		return fmt.Sprintf("%s: no limit was applied, and no distortion could be measured.", g.name)
+		return "no distortion could be measured"
 	}
 	top := Harmonic{Pct: NaN}
 	for _, h := range worst.Harmonics {
@@ -243,7 +247,7 @@ func unjudged(s *Survey, g group) string {
 			top = h
 		}
 	}
-	return fmt.Sprintf("%s, no limit applied: THD is %s %% of the fundamental on %s, the largest order is %d with %s %% (%s).", g.name,
+	return fmt.Sprintf("THD is %s %% of the fundamental on %s, the largest order is %d with %s %% (%s)",
 		Sig(float64(worst.THD.Mean)), worst.Name, top.Order, Sig(float64(top.Pct)), Quantity(float64(top.RMS), worst.Unit))
 }
 
@@ -252,6 +256,7 @@ type Lead struct {
 	Group   string // "Voltage" or "Current"
 	RuleSet string // for people
 	Finding Finding
+	Answer  string // the whole sentence
 }
 
 // Leads lists, for voltage and then current, each rule set's gravest finding, the one with the highest share of its
@@ -267,7 +272,7 @@ func Leads(s *Survey) []Lead {
 					lead = f
 				}
 			}
-			out = append(out, Lead{g.name, RuleTitle(set), lead})
+			out = append(out, Lead{g.name, RuleTitle(set), lead, answer(s, g, set)})
 		}
 	}
 	return out

@@ -11,7 +11,7 @@ import (
 
 // surveys are built once; tests that change anything build their own.
 var surveys = sync.OnceValue(func() map[string]*report.Survey {
-	return map[string]*report.Survey{"week": fixture.Week(), "short": fixture.Short(), "tiny": fixture.Tiny()}
+	return map[string]*report.Survey{"week": fixture.Week(), "short": fixture.Short(), "tiny": fixture.Tiny(), "log": fixture.Log()}
 })
 
 // Whatever the recording, a renderer may rely on this of every chart.
@@ -65,6 +65,11 @@ func TestChartsThereAre(t *testing.T) {
 			if got[i] != keys[i] {
 				t.Errorf("%s: chart %d is %q, want %q", name, i, got[i], keys[i])
 			}
+		}
+	}
+	for _, c := range report.Charts(all["log"]) {
+		if c.Kind == report.WaveformChart || c.Kind == report.PhasorChart {
+			t.Errorf("log: %q, of which a log of intervals holds nothing", c.Key)
 		}
 	}
 	spectrograms := 0

@@ -74,6 +74,9 @@ func orderRange(s *Survey) string {
 	if missed := ordersMissed(s); missed != "" {
 		text += "; not measured: " + missed
 	}
+	if s.Recording.Kind == "intervals" {
+		return text + "."
+	}
 	return text + ". Interharmonics up to the same order."
 }
 
@@ -101,23 +104,29 @@ func basisMethod(s *Survey) []MethodItem {
 		}
 		tdd.Text = fmt.Sprintf("Root of the sum of squares of orders 2 to %d of the current over the demand current of %s (%s).", harmonics.MaxOrder, Quantity(il, "A"), source)
 	}
-	return append(out, tdd,
-		MethodItem{"Angles", "Phase of order h minus h times the phase of the reference voltage's fundamental, cosine convention, in (-180°, 180°].", iec430 + ", 5.8 gives none; " + own})
+	out = append(out, tdd)
+	if s.Recording.Kind == "intervals" {
+		return out
+	}
+	return append(out, MethodItem{"Angles", "Phase of order h minus h times the phase of the reference voltage's fundamental, cosine convention, in (-180°, 180°].", iec430 + ", 5.8 gives none; " + own})
 }
 
 func statisticsMethod(s *Survey) []MethodItem {
-	out := []MethodItem{}
+	out := []MethodItem{
+		{"Aggregation", "3 s: 15 windows. 10 min: all windows between two clock marks. Root mean square of magnitudes, never a mean of phasors.",
+			iec430 + ", 4.4 and 4.5; IEEE 519-2022, clause 4"},
+		{"Flagging", "A window with missing samples, without lock, with a frequency step, at the end of the range, or in a dip, swell or interruption is flagged, and so is every interval that holds it. " +
+			"Flagged intervals are kept and shown, and left out of statistics.", iec430 + ", 4.7; flags other than for voltage events: " + own},
+		{"Voltage events", "Rms over one cycle refreshed each half cycle: dip below 90 %, swell above 110 %, interruption below 5 % of nominal, hysteresis 2 %.", iec430 + ", 5.4 and 5.5"},
+	}
 	if s.Recording.Kind == "intervals" {
-		out = append(out, MethodItem{"Aggregation", "Intervals between the standard's lengths are aggregated to 10 min by root mean square. What cannot be derived, such as 3 s values from 10 min ones, is not assessed.",
-			iec430 + ", 4.4 and 4.5"})
-	} else {
-		out = append(out, MethodItem{"Aggregation", "3 s: 15 windows. 10 min: all windows between two clock marks. Root mean square of magnitudes, never a mean of phasors.",
-			iec430 + ", 4.4 and 4.5; IEEE 519-2022, clause 4"})
+		out = []MethodItem{
+			{"Aggregation", "Intervals between the standard's lengths are aggregated to 10 min by root mean square. What cannot be derived, such as 3 s values from 10 min ones, is not assessed.",
+				iec430 + ", 4.4 and 4.5"},
+			{"Flagging", "Intervals that are missing, or that the recorder flagged, are kept and shown, and left out of statistics.", iec430 + ", 4.7"},
+		}
 	}
 	return append(out,
-		MethodItem{"Flagging", "A window with missing samples, without lock, with a frequency step, at the end of the range, or in a dip, swell or interruption is flagged, and so is every interval that holds it. " +
-			"Flagged intervals are kept and shown, and left out of statistics.", iec430 + ", 4.7; flags other than for voltage events: " + own},
-		MethodItem{"Voltage events", "Rms over one cycle refreshed each half cycle: dip below 90 %, swell above 110 %, interruption below 5 % of nominal, hysteresis 2 %.", iec430 + ", 5.4 and 5.5"},
 		MethodItem{"Percentiles", "Nearest rank over valid intervals: the smallest value that at least the given share of all values does not exceed. Of 1008 values the 95th percentile is the 958th. Phases apart, never pooled.",
 			"the standards fix no rule; common practice"},
 		MethodItem{"Length of record", "A statistic over a day or a week needs that day or week, with at least 80 % of its intervals valid; below 95 % a remark says so. Of several weeks or days the worst governs. " +
@@ -127,15 +136,18 @@ func statisticsMethod(s *Survey) []MethodItem {
 }
 
 func surenessMethod(s *Survey) []MethodItem {
-	return []MethodItem{
+	out := []MethodItem{
 		{"What a result rests on", "The value less and plus the uncertainty declared for its channel. within: value plus uncertainty is at or below the limit. exceeds: value less uncertainty is above it. " +
 			"undecided: the limit lies between, noise makes more than half the limit, a total lacks orders, or the record is shorter than the rule's period. " +
 			"not assessed: something needed is missing, the point is not one the limits are made for, or a doubt stops the verdict.", "JCGM 100:2008, 4.3 (type B); " + own},
 		{"Declared uncertainty", uncertaintyText(s), "site sheet"},
 		{"Confidence bounds", "95 % bounds of a percentile from order statistics, without assuming a distribution: what another such period might show. They take the intervals as independent; loads change slowly, " +
 			"so they are the least that sampling leaves open. A whole period was counted, not sampled: they take no part in its result.", "order-statistic intervals: textbooks of statistics"},
-		{"Noise floor", "For each channel and order, from the lines between harmonics. An order is 'above noise' when it stands clear of it. " + NoiseAssumption, own},
 	}
+	if s.Recording.Kind == "intervals" {
+		return out // a log tells nothing of noise
+	}
+	return append(out, MethodItem{"Noise floor", "For each channel and order, from the lines between harmonics. An order is 'above noise' when it stands clear of it. " + NoiseAssumption, own})
 }
 
 func uncertaintyText(s *Survey) string {
@@ -171,7 +183,7 @@ func plantMethod(s *Survey) []MethodItem {
 	if s.Neutral != nil && s.Neutral.Computed {
 		out = append(out, MethodItem{"Neutral current", "Not recorded: computed as the sum of the three phase currents, with their angles.", own})
 	}
-	if hasCurrents(s) {
+	if len(groups[1].channels(s)) > 0 {
 		out = append(out, MethodItem{"K-factor and F_HL", fmt.Sprintf("Sum of h² Ih² over sum of Ih², orders 1 to %d, of the measured current. Both grow with the highest order counted.", harmonics.MaxOrder),
 			"IEEE C57.110-2018; UL 1561"})
 	}
@@ -231,7 +243,7 @@ func ruleSetWords(r *limits.RuleSet) []string {
 	}
 	add(r.Scope)
 	if len(r.AppliesAt) > 0 {
-		add("For points of these kinds: " + list(r.AppliesAt))
+		add("Made for points declared as " + list(r.AppliesAt))
 	}
 	if r.Grouping != "" {
 		add("A harmonic is the " + r.Grouping)

@@ -2,6 +2,7 @@ package report
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"wavetally/harmonics/fitness"
@@ -61,27 +62,29 @@ func takeUpExceeded(s *Survey) string {
 
 // declareMissing asks for what the limits need and the site sheet does not have.
 func declareMissing(s *Survey) string {
-	if !hasCurrents(s) || len(s.Findings) == 0 {
+	if len(s.Findings) == 0 {
 		return ""
 	}
 	var missing []string
-	if s.Site.Supply.ShortCircuitCurrent <= 0 {
+	if s.Site.Supply.NominalVoltage <= 0 {
+		missing = append(missing, "the nominal voltage (nominal_voltage)")
+	}
+	judged := len(s.setsFor(groups[1])) > 0 // currents
+	if judged && s.Site.Supply.ShortCircuitCurrent <= 0 {
 		missing = append(missing, "the maximum short-circuit current at the point (short_circuit_current)")
 	}
-	if s.Site.Supply.DemandCurrent <= 0 {
+	if judged && s.Site.Supply.DemandCurrent <= 0 {
 		missing = append(missing, "the maximum demand load current (demand_current)")
 	}
 	if len(missing) == 0 {
 		return ""
 	}
-	return action("Ask the network operator for "+list(missing)+" and declare them in the site sheet.", "the current findings are no longer 'not assessed'.")
+	return action("Find out, from the network operator or the records, "+list(missing)+", and complete the site sheet with it.", "the findings are no longer 'not assessed' for want of it.")
 }
-
-func hasCurrents(s *Survey) bool { return len(groups[1].channels(s)) > 0 }
 
 // recordLonger asks for the length that the rules' statistics need.
 func recordLonger(s *Survey) string {
-	if !s.indicative() && len(s.Findings) > 0 {
+	if !s.indicative() && len(s.Findings) > 0 && !slices.ContainsFunc(s.Doubts, func(d Doubt) bool { return d.Code == "short-record" }) {
 		return ""
 	}
 	const week = 7 * 86400

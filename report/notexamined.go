@@ -18,7 +18,7 @@ func notExaminedOf(s *Survey) []string {
 			out = append(out, strings.ToLower(g.name)+" (not recorded)")
 		}
 	}
-	if s.Site.Supply.Connection == site.Wye4 && s.Neutral == nil {
+	if s.Site.Supply.Connection == site.Wye4 && s.Neutral == nil && !s.has("IN") {
 		out = append(out, "neutral current (neither recorded nor to be had from three phase currents)")
 	}
 	if lineToLineOnly(s) {
@@ -47,6 +47,10 @@ func missedFindings(s *Survey) []string {
 		out = append(out, fmt.Sprintf("%s of %s on %s: %s", plural(r.n, "finding"), RuleTitle(r.set), list(r.channels), r.why))
 	}
 	return out
+}
+
+func (s *Survey) has(channel string) bool {
+	return slices.ContainsFunc(s.Channels, func(c Channel) bool { return c.Name == channel })
 }
 
 func lineToLineOnly(s *Survey) bool {

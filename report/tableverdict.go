@@ -293,19 +293,3 @@ func governingByChannel(findings []Finding) []Finding {
 	}
 	return out
 }
-
-func (s *Survey) channel(name string) *Channel {
-	for i := range s.Channels {
-		if s.Channels[i].Name == name {
-			return &s.Channels[i]
-		}
-	}
-	return nil
-}
-
-func (c *Channel) harmonic(order int) *Harmonic {
-	if order < 1 || order > len(c.Harmonics) {
-		return nil
-	}
-	return &c.Harmonics[order-1]
-}

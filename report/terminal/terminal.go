@@ -125,8 +125,12 @@ func verdictRows(s *report.Survey) [][]string {
 	var rows [][]string
 	var led []report.Finding
 	for _, l := range report.Leads(s) {
-		rows = append(rows, row(l.Group, l.RuleSet, l.Finding))
 		led = append(led, l.Finding)
+		if !l.Finding.Value.Known() || !l.Finding.Limit.Known() {
+			rows = append(rows, []string{signs[l.Finding.Result] + " " + l.Answer})
+			continue
+		}
+		rows = append(rows, row(l.Group, l.RuleSet, l.Finding))
 	}
 	for _, f := range report.Exceeding(s) {
 		if !slices.ContainsFunc(led, func(g report.Finding) bool { return same(f, g) }) {
@@ -151,11 +155,7 @@ var signs = map[string]string{limits.Within: "[ok]", limits.Exceeds: "[!!]", lim
 func row(group, set string, f report.Finding) []string {
 	value, limit := report.Apart(float64(f.Value), float64(f.Limit))
 	what := report.QuantityName(f.Quantity, f.Order) + " on " + f.Channel
-	cells := []string{signs[f.Result], group, set, what}
-	if !f.Value.Known() || !f.Limit.Known() {
-		return append(cells, f.Result, "", "")
-	}
-	return append(cells, value+" "+f.Unit, "limit "+limit+" "+f.Unit, report.Sig(float64(f.Share))+" % of it")
+	return []string{signs[f.Result], group, set, what, value + " " + f.Unit, "limit " + limit + " " + f.Unit, report.Sig(float64(f.Share)) + " % of it"}
 }
 
 // table aligns rows in columns; a row of a single cell is text and wraps.
