@@ -32,7 +32,6 @@ func (s section) at(record int64) float64 { return s.base + float64(record-s.aft
 type stampScale struct {
 	unit  float64 // s
 	wraps float64 // s, after which 32 bits start again; 0: never
-	used  bool    // the configuration has no rate: the stamps tell the time
 	runs  []stretch
 }
 

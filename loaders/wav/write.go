@@ -2,83 +2,168 @@ package wav
 
 import (
 	"bufio"
+	"cmp"
 	"encoding/binary"
 	"fmt"
+	"io"
 	"math"
 	"os"
+	"path/filepath"
 
 	"wavetally/harmonics/wave"
 )
 
-// Write writes a recording as PCM of 16, 24 or 32 bits, or as float for -32 and -64. Full scale is 1: a sample beyond is
-// held at full scale; a missing one is written as 0. The recording must be of one segment.
-func Write(path string, src wave.Source, bits int) (err error) {
-	l := layout{tag: tagPCM, channels: len(src.Header().Channels), bytes: bits / 8, rate: src.Header().Rate}
-	if bits < 0 {
-		l.tag, l.bytes = tagFloat, -bits/8
+// Write writes a recording as PCM of 16, 24 or 32 bits, or as floating point for -32 and -64. A file beyond 4 GB becomes an
+// RF64. The source is read twice, and a complete file appears or none.
+//
+// The format holds neither names nor units, neither gaps nor rates that are no whole number. A recording with gaps or
+// such a rate is an error, and so is a sample beyond full scale, ±1, in PCM. A missing sample is NaN in floating point
+// and 0 in PCM, which has no mark for it.
+func Write(path string, src wave.Source, bits int) error {
+	w := &writer{src: src, float: bits < 0, width: max(bits, -bits) / 8}
+	switch bits {
+	case 16, 24, 32, -32, -64:
+	default:
+		return fmt.Errorf("wav: %d bits cannot be written; choose 16, 24, 32, -32 or -64", bits)
 	}
-	f, err := os.Create(path)
+	if err := w.survey(); err != nil {
+		return err
+	}
+	f, err := os.CreateTemp(filepath.Dir(path), "."+filepath.Base(path)+".*")
 	if err != nil {
 		return err
 	}
-	defer func() {
-		if e := f.Close(); err == nil {
-			err = e
-		}
-	}()
-	w := bufio.NewWriterSize(f, 1<<20)
-	w.Write(make([]byte, 44))
-	var size int64
-	var sample [8]byte
-	for b, err := range src.Blocks() {
+	defer os.Remove(f.Name())
+	out := bufio.NewWriterSize(f, readBytes)
+	if err = w.write(out); err == nil {
+		err = out.Flush()
+	}
+	if err == nil {
+		err = f.Chmod(0o644)
+	}
+	if err = cmp.Or(err, f.Close()); err != nil {
+		return err
+	}
+	return os.Rename(f.Name(), path)
+}
+
+// A writer writes one file.
+type writer struct {
+	src    wave.Source
+	float  bool
+	width  int // bytes of a sample
+	frames int64
+}
+
+// survey counts the samples, and sees that the format can hold them.
+func (w *writer) survey() error {
+	h := w.src.Header()
+	if h.Rate != math.Trunc(h.Rate) || h.Rate < 1 || h.Rate > math.MaxUint32 {
+		return fmt.Errorf("wav: a rate of %g samples a second is no whole number; write another format", h.Rate)
+	}
+	if n := len(h.Channels); n == 0 || n > math.MaxUint16/w.width {
+		return fmt.Errorf("wav: %d channels cannot be written", n)
+	}
+	for b, err := range w.src.Blocks() {
 		if err != nil {
 			return err
 		}
-		if b.Segment != 0 {
-			return fmt.Errorf("%s: a WAV file cannot hold gaps", path)
+		if b.Segment > 0 {
+			return fmt.Errorf("wav: the recording has a gap at %g s, which the format cannot hold; write another", b.At)
 		}
-		for i := range b.Len() {
-			for c := range b.Data {
-				l.encode(sample[:], b.Data[c][i])
-				w.Write(sample[:l.bytes])
+		w.frames += int64(b.Len())
+		for c, row := range b.Data {
+			for _, v := range row {
+				if !w.float && math.Abs(v) > 1 {
+					return fmt.Errorf("wav: a sample of %s is %g, beyond full scale ±1; scale the recording, or write floating point", h.Channels[c].Name, v)
+				}
 			}
 		}
-		size += int64(b.Len()) * l.frame()
 	}
-	if err := w.Flush(); err != nil {
+	if w.frames == 0 {
+		return fmt.Errorf("wav: the recording has no samples")
+	}
+	return nil
+}
+
+func (w *writer) write(out io.Writer) error {
+	if _, err := out.Write(w.opening()); err != nil {
 		return err
 	}
-	_, err = f.WriteAt(l.head(size), 0)
-	return err
-}
-
-func (l layout) encode(dst []byte, v float64) {
-	switch {
-	case l.tag == tagFloat && l.bytes == 4:
-		binary.LittleEndian.PutUint32(dst, math.Float32bits(float32(v)))
-	case l.tag == tagFloat:
-		binary.LittleEndian.PutUint64(dst, math.Float64bits(v))
-	default:
-		if math.IsNaN(v) {
-			v = 0
+	var buf []byte
+	for b, err := range w.src.Blocks() {
+		if err != nil {
+			return err
 		}
-		full := math.Ldexp(1, 8*l.bytes-1)
-		binary.LittleEndian.PutUint64(dst, uint64(int64(math.Max(-full, math.Min(full-1, math.RoundToEven(v*full))))))
+		buf = buf[:0]
+		for i := range b.Len() {
+			for _, row := range b.Data {
+				buf = w.sample(buf, row[i])
+			}
+		}
+		if _, err := out.Write(buf); err != nil {
+			return err
+		}
 	}
+	if w.bytes()%2 == 1 {
+		_, err := out.Write([]byte{0})
+		return err
+	}
+	return nil
 }
 
-func (l layout) head(size int64) []byte {
-	h := make([]byte, 0, 44)
-	h = append(h, "RIFF"...)
-	h = binary.LittleEndian.AppendUint32(h, uint32(36+size))
-	h = append(h, "WAVEfmt "...)
-	h = binary.LittleEndian.AppendUint32(h, 16)
-	h = binary.LittleEndian.AppendUint16(h, uint16(l.tag))
-	h = binary.LittleEndian.AppendUint16(h, uint16(l.channels))
-	h = binary.LittleEndian.AppendUint32(h, uint32(l.rate))
-	h = binary.LittleEndian.AppendUint32(h, uint32(int64(l.rate)*l.frame()))
-	h = binary.LittleEndian.AppendUint16(h, uint16(l.frame()))
-	h = binary.LittleEndian.AppendUint16(h, uint16(8*l.bytes))
-	h = append(h, "data"...)
-	return binary.LittleEndian.AppendUint32(h, uint32(size))
+func (w *writer) bytes() int64 { return w.frames * int64(w.frame()) }
+
+func (w *writer) frame() int { return w.width * len(w.src.Header().Channels) }
+
+// opening is the file up to the first sample.
+func (w *writer) opening() []byte {
+	h := w.src.Header()
+	le := binary.LittleEndian
+	var format []byte
+	code := uint16(codePCM)
+	if w.float {
+		code = codeFloat
+	}
+	format = le.AppendUint16(format, code)
+	format = le.AppendUint16(format, uint16(len(h.Channels)))
+	format = le.AppendUint32(format, uint32(h.Rate))
+	format = le.AppendUint32(format, uint32(min(h.Rate*float64(w.frame()), math.MaxUint32)))
+	format = le.AppendUint16(format, uint16(w.frame()))
+	format = le.AppendUint16(format, uint16(8*w.width))
+
+	chunks := chunk(nil, "fmt ", format)
+	id, total, length := "RIFF", 4+int64(len(chunks))+8+w.bytes()+w.bytes()%2, w.bytes()
+	if total > math.MaxUint32 {
+		sizes := le.AppendUint64(nil, uint64(total+36))
+		sizes = le.AppendUint64(sizes, uint64(w.bytes()))
+		sizes = le.AppendUint64(sizes, uint64(w.frames))
+		chunks = append(chunk(nil, "ds64", le.AppendUint32(sizes, 0)), chunks...)
+		id, total, length = "RF64", math.MaxUint32, math.MaxUint32
+	}
+	head := le.AppendUint32([]byte(id), uint32(total))
+	head = append(append(head, "WAVE"...), chunks...)
+	return le.AppendUint32(append(head, "data"...), uint32(length))
+}
+
+func chunk(to []byte, id string, body []byte) []byte {
+	return append(binary.LittleEndian.AppendUint32(append(to, id...), uint32(len(body))), body...)
+}
+
+func (w *writer) sample(buf []byte, v float64) []byte {
+	switch {
+	case w.float && w.width == 4:
+		return binary.LittleEndian.AppendUint32(buf, math.Float32bits(float32(v)))
+	case w.float:
+		return binary.LittleEndian.AppendUint64(buf, math.Float64bits(v))
+	}
+	if math.IsNaN(v) {
+		v = 0
+	}
+	full := math.Ldexp(1, 8*w.width-1)
+	x := uint32(int32(min(math.Round(v*full), full-1)))
+	for i := range w.width {
+		buf = append(buf, byte(x>>(8*i)))
+	}
+	return buf
 }
