@@ -208,7 +208,7 @@ func (j *judge) finding(s *setting, r *row, c *cell, q quantity, st Statistic) F
 	f.Factor = f.OfOrder * f.OfStat
 	f.Limit = f.TablePct * f.Factor
 	f.Unverified = c.Unverified() || from.Unverified() || st.Unverified() && f.OfStat != 1
-	got := j.reader.read(st, q)
+	got := j.read(st, q)
 	f.take(got, j.sum.Channels[s.channel].Uncertainty)
 	f.Floor = q.floor(&j.sum.Channels[s.channel])
 	if q.order == 0 {
@@ -217,6 +217,15 @@ func (j *judge) finding(s *setting, r *row, c *cell, q quantity, st Statistic) F
 	v := verdict{judge: j, setting: s, cell: c, quantity: q, statistic: st, reading: got, finding: &f}
 	v.decide()
 	return f
+}
+
+// read returns the statistic; a reading without value for an order that the sampling rate does not support.
+func (j *judge) read(st Statistic, q quantity) reading {
+	if top := j.sum.Channels[q.channel].TopOrder; top > 0 && q.order > top {
+		nan := math.NaN()
+		return reading{value: nan, level: nan, sampleLow: nan, sampleHigh: nan}
+	}
+	return j.reader.read(st, q)
 }
 
 // take puts a reading into the finding. uncertainty is that declared for the channel, in per cent of reading.
@@ -232,7 +241,7 @@ func (f *Finding) take(got reading, uncertainty float64) {
 	}
 	f.ValueLow, f.ValueHigh = low*(1-u), high*(1+u)
 	f.OverPct = math.NaN()
-	if n := len(got.sorted.values); n > 0 {
+	if n := len(got.sorted); n > 0 {
 		f.OverPct = 100 * float64(got.sorted.above(f.Limit)) / float64(n)
 	}
 }

@@ -1,7 +1,6 @@
 package limits
 
 import (
-	"cmp"
 	"math"
 	"slices"
 	"sort"
@@ -37,36 +36,30 @@ func confidenceRanks(n int, p float64) (low, high int) {
 	return low, high
 }
 
-// A ranked holds values in ascending order, with the interval each came from.
-type ranked struct {
-	values []float64
-	from   []int
-}
+// A ranked holds values in ascending order.
+type ranked []float64
 
-// rank sorts the values that are known; from tells the index that each keeps.
+// rank sorts the values that are known.
 func rank(values []float64) ranked {
-	var r ranked
-	for i, v := range values {
+	r := make(ranked, 0, len(values))
+	for _, v := range values {
 		if !math.IsNaN(v) {
-			r.from = append(r.from, i)
+			r = append(r, v)
 		}
 	}
-	slices.SortStableFunc(r.from, func(a, b int) int { return cmp.Compare(values[a], values[b]) })
-	for _, i := range r.from {
-		r.values = append(r.values, values[i])
-	}
+	slices.Sort(r)
 	return r
 }
 
 // at returns the value of a rank from 1, NaN for a rank that there is none of.
 func (r ranked) at(rank int) float64 {
-	if rank < 1 || rank > len(r.values) {
+	if rank < 1 || rank > len(r) {
 		return math.NaN()
 	}
-	return r.values[rank-1]
+	return r[rank-1]
 }
 
 // above counts the values above a limit.
 func (r ranked) above(limit float64) int {
-	return len(r.values) - sort.Search(len(r.values), func(i int) bool { return r.values[i] > limit })
+	return len(r) - sort.Search(len(r), func(i int) bool { return r[i] > limit })
 }

@@ -91,8 +91,8 @@ func TestConfidenceRanksCover(t *testing.T) {
 
 func TestRanked(t *testing.T) {
 	r := rank([]float64{3, math.NaN(), 1, 2, 2})
-	if !slices.Equal(r.values, []float64{1, 2, 2, 3}) || !slices.Equal(r.from, []int{2, 3, 4, 0}) {
-		t.Errorf("rank gives %v from %v", r.values, r.from)
+	if !slices.Equal(r, ranked{1, 2, 2, 3}) {
+		t.Errorf("rank gives %v", r)
 	}
 	if r.above(2) != 1 || r.above(1.5) != 3 || r.above(3) != 0 || !math.IsNaN(r.at(0)) || !math.IsNaN(r.at(5)) || r.at(4) != 3 {
 		t.Error("counts above a limit, or ranks, are wrong")

@@ -20,11 +20,11 @@ const (
 type period struct {
 	from, to    float64 // s from the start of the recording
 	first, last int     // intervals first to last-1 begin in it
-	valid       int     // of them
 	want        int     // in a whole period
 }
 
-func (p period) share() float64 { return float64(p.valid) / float64(p.want) }
+// share is the share of a whole period's intervals that n are.
+func (p period) share(n int) float64 { return float64(n) / float64(p.want) }
 
 // periods cuts a recording's 10 min intervals into consecutive whole periods of the given length in s, and adds the last
 // such length of the recording where it is no whole number of them. A recording shorter than one period gives none.
@@ -72,9 +72,6 @@ func cutPeriod(tens []harmonics.Interval, from, length float64) period {
 			continue
 		}
 		p.first = min(p.first, i)
-		if v.Valid() {
-			p.valid++
-		}
 	}
 	return p
 }

@@ -3,6 +3,7 @@ package limits
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"wavetally/harmonics"
 )
@@ -15,7 +16,6 @@ type reading struct {
 	sampleHigh   float64
 	sorted       ranked // the values behind it, where they are held
 	from, to     float64
-	period       period // of 10 min intervals; want is 0 where there is none
 
 	indicative string   // why value is not what the rule asks for, "" where it is
 	warnings   []string // that stand beside the verdict
@@ -50,22 +50,21 @@ func (r *reader) read(s Statistic, q quantity) reading {
 // tens reads a percentile of 10 min values: that of the worst whole period, else of what there is.
 func (r *reader) tens(s Statistic, q quantity) reading {
 	best := reading{value: math.NaN()}
-	weak := 0
+	weak, most, want := 0, 0, 0
 	for _, p := range r.periods(periodLengths[s.Period]) {
-		if p.share() < weakShare {
-			weak++
-			continue
-		}
 		got := r.percentile(s, q, p.first, p.last)
-		if math.IsNaN(got.value) || !math.IsNaN(best.value) && got.value <= best.value {
-			continue
+		most, want = max(most, got.n), p.want
+		switch {
+		case p.share(got.n) < weakShare:
+			weak++
+		case !(got.value <= best.value):
+			best, best.from, best.to = got, p.from, p.to
+			best.warnings = coverage(s.Period, got.n, p)
 		}
-		best, best.period, best.from, best.to = got, p, p.from, p.to
 	}
 	if math.IsNaN(best.value) {
-		return r.partial(s, q)
+		return r.partial(s, q, r.lacking(s, most, want))
 	}
-	best.warnings = append(best.warnings, coverage(s.Period, best.period)...)
 	if weak > 0 {
 		best.warnings = append(best.warnings, fmt.Sprintf("%d other %s%s with less than %g %% valid intervals did not count", weak, s.Period, plural(weak), 100*weakShare))
 	}
@@ -79,11 +78,12 @@ func plural(n int) string {
 	return "s"
 }
 
-func coverage(name string, p period) []string {
-	if p.share() >= firmShare {
+// coverage warns of a period that lacks intervals.
+func coverage(name string, n int, p period) []string {
+	if p.share(n) >= firmShare {
 		return nil
 	}
-	return []string{fmt.Sprintf("only %d of the %s's %d intervals of 10 min are valid (%s %%)", p.valid, name, p.want, sig(100*p.share(), 3))}
+	return []string{fmt.Sprintf("only %d of the %s's %d intervals of 10 min are valid (%s %%)", n, name, p.want, sig(100*p.share(n), 3))}
 }
 
 func (r *reader) periods(length float64) []period {
@@ -105,11 +105,10 @@ func (r *reader) percentile(s Statistic, q quantity, first, last int) reading {
 		}
 	}
 	sorted := rank(values)
-	n := len(sorted.values)
-	at := NearestRank(n, s.Percentile)
-	out := reading{value: sorted.at(at), level: math.NaN(), n: n, sorted: sorted}
-	if at > 0 {
-		out.level = q.level(&r.sum.Tens[first+sorted.from[at-1]].Channels[q.channel])
+	n := len(sorted)
+	out := reading{value: sorted.at(NearestRank(n, s.Percentile)), level: math.NaN(), n: n, sorted: sorted}
+	if i := slices.Index(values, out.value); i >= 0 {
+		out.level = q.level(&r.sum.Tens[first+i].Channels[q.channel])
 	}
 	low, high := r.confidence(n, s.Percentile)
 	out.sampleLow, out.sampleHigh = sorted.at(low), sorted.at(high)
@@ -127,8 +126,7 @@ func (r *reader) confidence(n int, p float64) (low, high int) {
 }
 
 // partial is the nearest to a percentile of 10 min values over a whole period that the recording gives.
-func (r *reader) partial(s Statistic, q quantity) reading {
-	why := r.lacking(s)
+func (r *reader) partial(s Statistic, q quantity, why string) reading {
 	if got := r.percentile(s, q, 0, len(r.sum.Tens)); got.n > 0 {
 		got.indicative = fmt.Sprintf("%s; the value is the %s of its %d valid 10 min value%s", why, percentileName(s.Percentile), got.n, plural(got.n))
 		got.from, got.to = 0, r.sum.Duration
@@ -137,19 +135,13 @@ func (r *reader) partial(s Statistic, q quantity) reading {
 	return r.fromThrees(s, q, why)
 }
 
-// lacking says why there is no whole period.
-func (r *reader) lacking(s Statistic) string {
-	best := period{}
-	for _, p := range r.periods(periodLengths[s.Period]) {
-		if best.want == 0 || p.valid > best.valid {
-			best = p
-		}
-	}
-	if best.want > 0 {
+// lacking says why there is no whole period; most is how many of the want intervals of a period are valid at best.
+func (r *reader) lacking(s Statistic, most, want int) string {
+	switch {
+	case want > 0:
 		return fmt.Sprintf("only %d of a %s's %d intervals of 10 min are valid (%s %%, at least %g %% are needed)",
-			best.valid, s.Period, best.want, sig(100*best.share(), 3), 100*weakShare)
-	}
-	if len(r.sum.Tens) == 0 && r.sum.Duration >= periodLengths[s.Period] {
+			most, s.Period, want, sig(100*float64(most)/float64(want), 3), 100*weakShare)
+	case len(r.sum.Tens) == 0 && r.sum.Duration >= periodLengths[s.Period]:
 		return "the record holds no 10 min values"
 	}
 	return r.tooShort(s)
