@@ -187,7 +187,7 @@ func (p *printer) recording(r *recording, sum *harmonics.Summary) {
 		p.row("Length", fmt.Sprintf("%s, %d samples a channel", seconds(float64(h.Samples)/h.Rate), h.Samples))
 	}
 	p.row("Sampling", samplingText(h, r.look, sum))
-	p.row("Mains", mainsText(h, r.look))
+	p.row("Mains", mainsText(h, r.look, sum))
 	if sum != nil {
 		p.row("Gaps", gapsText(sum.Gaps))
 	}
@@ -237,9 +237,12 @@ func samplingText(h wave.Header, look site.Look, sum *harmonics.Summary) string 
 	return text
 }
 
-func mainsText(h wave.Header, look site.Look) string {
+func mainsText(h wave.Header, look site.Look, sum *harmonics.Summary) string {
 	text := "no fundamental between 42 and 69.5 Hz found"
-	if look.Frequency > 0 {
+	switch {
+	case sum != nil:
+		text = fmt.Sprintf("%.3f Hz, from %.3f to %.3f Hz", sum.Frequency.Mean, sum.Frequency.Min, sum.Frequency.Max)
+	case look.Frequency > 0:
 		text = fmt.Sprintf("%.3f Hz", look.Frequency)
 	}
 	if h.Nominal > 0 {

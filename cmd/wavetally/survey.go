@@ -20,6 +20,7 @@ import (
 	"wavetally/report"
 	"wavetally/report/pdf"
 	"wavetally/report/terminal"
+	"wavetally/report/xlsx"
 )
 
 // surveyFlags are the flags of survey; the zero value leaves all to the site sheet.
@@ -58,7 +59,7 @@ instead, and the same inputs give the same bytes.`,
 	f.addTo(cmd)
 	flags := cmd.Flags()
 	flags.StringVar(&f.into, "into", ".", "folder for the documents")
-	flags.StringSliceVar(&f.formats, "formats", []string{"pdf", "json"}, "documents to write")
+	flags.StringSliceVar(&f.formats, "formats", []string{"pdf", "xlsx", "json"}, "documents to write")
 	flags.StringSliceVar(&f.rules, "rules", nil, "rule sets to judge by, instead of the site sheet's")
 	flags.StringVar(&f.paper, "paper", "", "paper of the PDF: A4 or Letter; without it Letter at 60 Hz, else A4")
 	flags.Float64Var(&f.voltage, "nominal-voltage", 0, "V, instead of the site sheet's")
@@ -226,6 +227,7 @@ var renderers = map[string]func(w io.Writer, s *report.Survey, f surveyFlags) er
 	"pdf": func(w io.Writer, s *report.Survey, f surveyFlags) error {
 		return pdf.Write(w, s, pdf.Options{Paper: f.paper})
 	},
+	"xlsx": func(w io.Writer, s *report.Survey, _ surveyFlags) error { return xlsx.Write(w, s) },
 	"json": func(w io.Writer, s *report.Survey, _ surveyFlags) error { return report.WriteJSON(w, s) },
 }
 
