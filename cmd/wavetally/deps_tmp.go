@@ -3,6 +3,7 @@
 package main
 
 import (
+	_ "codeberg.org/go-fonts/liberation/liberationsansregular"
 	_ "github.com/BurntSushi/toml"
 	_ "github.com/google/go-cmp/cmp"
 	_ "github.com/jung-kurt/gofpdf"
@@ -15,6 +16,5 @@ import (
 	_ "golang.org/x/text/encoding/charmap"
 	_ "gonum.org/v1/gonum/dsp/fourier"
 	_ "gonum.org/v1/plot/vg/draw"
-	_ "codeberg.org/go-fonts/liberation/liberationsansregular"
 	_ "modernc.org/sqlite"
 )
