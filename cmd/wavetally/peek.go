@@ -1,6 +1,7 @@
 package main
 
 import (
+	"cmp"
 	"context"
 	"errors"
 	"fmt"
@@ -270,7 +271,7 @@ func (p *printer) channels(r *recording, sum *harmonics.Summary) {
 	rows := [][]string{{"channel", "unit", "rms", "dc", "peak", "fundamental", "angle", "THD", "taken as"}}
 	for i, ch := range r.Header().Channels {
 		role, as := roleOf(r, i)
-		row := []string{ch.Name, ch.FileUnit, "", "", "", "", "", "", as}
+		row := []string{ch.Name, cmp.Or(ch.Unit, ch.FileUnit), "", "", "", "", "", "", as}
 		if i < len(r.look.Channels) {
 			l := r.look.Channels[i]
 			row[2], row[3], row[4], row[5] = figure(l.RMS), figure(l.DC), figure(l.Peak), figure(l.Fundamental)

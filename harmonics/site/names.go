@@ -1,6 +1,7 @@
 package site
 
 import (
+	"slices"
 	"strings"
 	"unicode"
 )
@@ -42,6 +43,9 @@ type guess struct {
 // roleByName reads a role from a channel's name, its unit ("V", "A" or "") and the file's own phase designation.
 func roleByName(name, unit, phase string) (guess, bool) {
 	words := split(name)
+	if slices.ContainsFunc(words, openDelta) {
+		return guess{}, false
+	}
 	if g, ok := roleOfWords(words, unit); ok {
 		return g, true
 	}
@@ -49,6 +53,12 @@ func roleByName(name, unit, phase string) (guess, bool) {
 		return roleOf(q, strings.Join(split(phase), ""))
 	}
 	return guess{}, false
+}
+
+// openDelta reports whether a word names the sum of three voltages, as relays record it from an open delta winding: it
+// is no voltage of the neutral conductor, whatever phase the file gives it.
+func openDelta(word string) bool {
+	return slices.Contains([]string{"3U0", "3UO", "3V0", "3VO", "U0", "V0"}, word)
 }
 
 // split cuts a name into upper-case words, without brackets' contents, fillers and the recorder's own channel number:

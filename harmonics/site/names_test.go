@@ -19,6 +19,7 @@ func TestRoleByName(t *testing.T) {
 		{"Voltage", "V", "", "V1 weak"}, {"I", "", "", "I1 weak"}, {"Current", "A", "", "I1 weak"}, {"V L-N", "", "", "V1"},
 		// The file's own designation, as COMTRADE gives one.
 		{"bus 4711", "V", "B", "V2"}, {"feeder", "A", "N", "IN"}, {"feeder", "A", "L3", "I3"}, {"line", "V", "AB", "V12"}, {"母线电压", "V", "C", "V3"},
+		{"220kV I_3U0", "V", "N", ""}, {"T1_3I0", "A", "N", "IN"},
 		// Nothing to tell a conductor by.
 		{"CH1", "V", "", ""}, {"Channel A", "V", "", ""}, {"1", "V", "", ""}, {"col3", "", "", ""}, {"temp", "", "", ""}, {"VAC", "", "", ""},
 		{"Vrms", "", "", ""}, {"Input 2", "A", "", ""}, {"AI4", "V", "", ""}, {"", "V", "", ""}, {"P", "", "A", ""}, {"L1", "", "", ""},
