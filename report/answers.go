@@ -104,11 +104,29 @@ func answer(s *Survey, g group, set string) string {
 // forInformation shows what there is where nothing was assessed: the highest share of a limit, else the distortion.
 func forInformation(s *Survey, g group, f Finding) string {
 	if !f.Value.Known() || !f.Limit.Known() {
-		return "For information: " + distortion(s, g) + "."
+		return "For information: " + distortion(s, g) + "." + s.demandThatKeeps(g, f.RuleSet)
 	}
 	value, limit := Apart(float64(f.Value), float64(f.Limit))
 	return fmt.Sprintf("For information: %s on %s is %s %s of the %s, %s %% of a limit of %s %s.", QuantityName(f.Quantity, f.Order), f.Channel, value, f.Unit, f.Basis,
 		Sig(float64(f.Share)), limit, f.Unit)
+}
+
+// demandThatKeeps is the demand current from which on every current value of this record would keep to the limits shown,
+// where none was declared. Those limits are then of the strictest row, so that the figure holds whatever the row.
+func (s *Survey) demandThatKeeps(g group, set string) string {
+	if g.key != "I" || s.Site.Supply.DemandCurrent > 0 {
+		return ""
+	}
+	most := 0.0
+	for _, f := range s.Judged {
+		if f.RuleSet == set && g.member(f.Channel) && f.Limit > 0 && f.Level > 0 {
+			most = max(most, 100*f.Level/f.Limit)
+		}
+	}
+	if most == 0 {
+		return ""
+	}
+	return fmt.Sprintf(" By the values of this record every limit would be kept, even those of the strictest row, for a demand current from %s on.", Quantity(most, "A"))
 }
 
 func asFar(missed []Finding) string {

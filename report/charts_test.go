@@ -17,29 +17,34 @@ var surveys = sync.OnceValue(func() map[string]*report.Survey {
 // Whatever the recording, a renderer may rely on this of every chart.
 func TestChartsHoldTogether(t *testing.T) {
 	for name, s := range surveys() {
-		keys := map[string]bool{}
-		for _, c := range report.Charts(s) {
-			if keys[c.Key] {
-				t.Errorf("%s: two charts %q", name, c.Key)
+		checkCharts(t, name, s)
+	}
+}
+
+func checkCharts(t *testing.T, name string, s *report.Survey) {
+	t.Helper()
+	keys := map[string]bool{}
+	for _, c := range report.Charts(s) {
+		if keys[c.Key] {
+			t.Errorf("%s: two charts %q", name, c.Key)
+		}
+		keys[c.Key] = true
+		if c.Title == "" || c.Caption == "" {
+			t.Errorf("%s %s: title %q, caption %q", name, c.Key, c.Title, c.Caption)
+		}
+		for _, a := range []report.Axis{c.X, c.Y} {
+			if c.Kind != report.PhasorChart && !(a.High > a.Low) {
+				t.Errorf("%s %s: axis %q from %g to %g", name, c.Key, a.Label, a.Low, a.High)
 			}
-			keys[c.Key] = true
-			if c.Title == "" || c.Caption == "" {
-				t.Errorf("%s %s: title %q, caption %q", name, c.Key, c.Title, c.Caption)
+		}
+		for _, line := range c.Series {
+			if len(line.X) != len(line.Y) || len(line.X) == 0 {
+				t.Errorf("%s %s %s: %d X, %d Y", name, c.Key, line.Name, len(line.X), len(line.Y))
 			}
-			for _, a := range []report.Axis{c.X, c.Y} {
-				if c.Kind != report.PhasorChart && !(a.High > a.Low) {
-					t.Errorf("%s %s: axis %q from %g to %g", name, c.Key, a.Label, a.Low, a.High)
-				}
-			}
-			for _, line := range c.Series {
-				if len(line.X) != len(line.Y) || len(line.X) == 0 {
-					t.Errorf("%s %s %s: %d X, %d Y", name, c.Key, line.Name, len(line.X), len(line.Y))
-				}
-			}
-			if g := c.Grid; g != nil {
-				if len(g.Xs) != len(g.Value) || len(g.Ys) != len(g.Value[0]) || !(g.High > g.Low) {
-					t.Errorf("%s %s: grid of %d × %d for %d × %d, scale %g to %g", name, c.Key, len(g.Value), len(g.Value[0]), len(g.Xs), len(g.Ys), g.Low, g.High)
-				}
+		}
+		if g := c.Grid; g != nil {
+			if len(g.Xs) != len(g.Value) || len(g.Ys) != len(g.Value[0]) || !(g.High > g.Low) {
+				t.Errorf("%s %s: grid of %d × %d for %d × %d, scale %g to %g", name, c.Key, len(g.Value), len(g.Value[0]), len(g.Xs), len(g.Ys), g.Low, g.High)
 			}
 		}
 	}

@@ -127,7 +127,8 @@ func statisticsMethod(s *Survey) []MethodItem {
 		}
 	}
 	return append(out,
-		MethodItem{"Percentiles", "Nearest rank over valid intervals: the smallest value that at least the given share of all values does not exceed. Of 1008 values the 95th percentile is the 958th. Phases apart, never pooled.",
+		MethodItem{"Percentiles", "Nearest rank over valid intervals: the smallest value that at least the given share of all values does not exceed. Of 1008 values the 95th percentile is the 958th. Phases apart, never pooled. " +
+			"Of more than 1200 values of 3 s they are read from classes 0.1 % wide, at most 0.1 % above the exact one; daily ones are exact.",
 			"the standards fix no rule; common practice"},
 		MethodItem{"Length of record", "A statistic over a day or a week needs that day or week, with at least 80 % of its intervals valid; below 95 % a remark says so. Of several weeks or days the worst governs. " +
 			"A shorter record gives the nearest value it has, marked indicative, and never the result 'within'.",
@@ -147,7 +148,7 @@ func surenessMethod(s *Survey) []MethodItem {
 	if s.Recording.Kind == "intervals" {
 		return out // a log tells nothing of noise
 	}
-	return append(out, MethodItem{"Noise floor", "For each channel and order, from the lines between harmonics. An order is 'above noise' when it stands clear of it. " + NoiseAssumption, own})
+	return append(out, MethodItem{"Noise floor", "For each channel and order, from the lines between harmonics. An order is 'above noise' when its mean square over the recording stands four standard errors above that of noise. " + NoiseAssumption, own})
 }
 
 func uncertaintyText(s *Survey) string {

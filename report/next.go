@@ -16,7 +16,7 @@ const actions = 3
 // wrong hook-up is put right first. Nothing here changes the installation; that is for its engineer to decide.
 func nextOf(s *Survey) []string {
 	out := []string{}
-	for _, propose := range []func(*Survey) string{repairRecord, takeUpExceeded, declareMissing, recordLonger, decideOpen, heedCaution, keepWatching} {
+	for _, propose := range []func(*Survey) string{repairRecord, takeUpExceeded, declareMissing, recordLonger, decideOpen, settleMissed, heedCaution, keepWatching} {
 		if text := propose(s); text != "" && len(out) < actions {
 			out = append(out, text)
 		}
@@ -107,6 +107,19 @@ func decideOpen(s *Survey) string {
 		apart := 100 * (float64(f.Value) - float64(f.Limit)) / float64(f.Limit)
 		what := fmt.Sprintf("Settle %s on %s under %s, %s %% from its limit", QuantityName(f.Quantity, f.Order), f.Channel, RuleTitle(f.RuleSet), Sig(abs(apart)))
 		return action(sentence(what+": "+reasonAndRemedy(f.Why)), "a new survey gives it a result other than undecided.")
+	}
+	return ""
+}
+
+// settleMissed says what would settle the findings that were not assessed for a reason other than doubts and
+// declarations, which have actions of their own.
+func settleMissed(s *Survey) string {
+	for _, r := range reasons(s.Findings) {
+		if r.result != limits.NotAssessed || !strings.Contains(r.why, "settle") || strings.Contains(r.why, "not declared") {
+			continue
+		}
+		return action(sentence(fmt.Sprintf("%s of %s on %s: %s", plural(r.n, "finding"), RuleTitle(r.set), list(r.channels), reasonAndRemedy(r.why))),
+			"a new survey gives them a result other than 'not assessed'.")
 	}
 	return ""
 }

@@ -11,30 +11,35 @@ import (
 
 func TestTablesHoldTogether(t *testing.T) {
 	for name, s := range surveys() {
-		keys := map[string]bool{}
-		for _, table := range append(report.Tables(s), report.FullTables(s)...) {
-			if keys[table.Key] {
-				t.Errorf("%s: two tables %q", name, table.Key)
+		checkTables(t, name, s)
+	}
+}
+
+func checkTables(t *testing.T, name string, s *report.Survey) {
+	t.Helper()
+	keys := map[string]bool{}
+	for _, table := range append(report.Tables(s), report.FullTables(s)...) {
+		if keys[table.Key] {
+			t.Errorf("%s: two tables %q", name, table.Key)
+		}
+		keys[table.Key] = true
+		columns := map[string]bool{}
+		for _, c := range table.Columns {
+			if columns[c.Key] {
+				t.Errorf("%s %s: two columns %q", name, table.Key, c.Key)
 			}
-			keys[table.Key] = true
-			columns := map[string]bool{}
-			for _, c := range table.Columns {
-				if columns[c.Key] {
-					t.Errorf("%s %s: two columns %q", name, table.Key, c.Key)
-				}
-				columns[c.Key] = true
+			columns[c.Key] = true
+		}
+		for i, row := range table.Rows {
+			if len(row) != len(table.Columns) {
+				t.Fatalf("%s %s row %d: %d cells, %d columns", name, table.Key, i, len(row), len(table.Columns))
 			}
-			for i, row := range table.Rows {
-				if len(row) != len(table.Columns) {
-					t.Fatalf("%s %s row %d: %d cells, %d columns", name, table.Key, i, len(row), len(table.Columns))
+			for k, cell := range row {
+				if cell.IsNum && cell.Number.Known() == (cell.Text == report.Dash) {
+					t.Errorf("%s %s row %d %s: %g is shown as %q", name, table.Key, i, table.Columns[k].Key, float64(cell.Number), cell.Text)
 				}
-				for k, cell := range row {
-					if cell.IsNum && cell.Number.Known() == (cell.Text == report.Dash) {
-						t.Errorf("%s %s row %d %s: %g is shown as %q", name, table.Key, i, table.Columns[k].Key, float64(cell.Number), cell.Text)
-					}
-					if strings.Contains(cell.Text, "NaN") {
-						t.Errorf("%s %s row %d: %q", name, table.Key, i, cell.Text)
-					}
+				if strings.Contains(cell.Text, "NaN") {
+					t.Errorf("%s %s row %d: %q", name, table.Key, i, cell.Text)
 				}
 			}
 		}
