@@ -16,6 +16,7 @@ import (
 func drawBars(c draw.Canvas, ch report.Chart) {
 	channels := measuredSeries(ch)
 	ch.Y.High *= 1.06 // room for a bar's name
+	ch.X.High = math.Min(ch.X.High, topOrder(ch)+1)
 	weights := make([]float64, len(channels))
 	for i := range weights {
 		weights[i] = 1
@@ -23,7 +24,7 @@ func drawBars(c draw.Canvas, ch report.Chart) {
 	top := drawKey(c, axisName(ch.Y), barKeys(ch, channels))
 	for i, r := range stack(c, top, nameRoom, belowOneRow, weights) {
 		p := newPanel(c, r, ch.X, ch.Y)
-		p.axisY(p.yTicks())
+		p.axisY(p.yTicks(scaleOf(ch.Y)))
 		p.bars(channels[i], highestOf(ch, channels[i].Role), ch.Limits)
 		last := i == len(channels)-1
 		p.axisX(orderTicks(p.x.low+1, p.x.high-1, float64(p.x.to-p.x.from)/12), last)
@@ -32,6 +33,29 @@ func drawBars(c draw.Canvas, ch report.Chart) {
 		}
 		p.FillText(letters(labelSize, true, Ink, draw.XLeft, draw.YTop), vg.Point{X: p.Max.X + 4, Y: p.Max.Y + 1}, channels[i].Name)
 	}
+}
+
+// fewestOrders is how far a spectrum's axis reaches at least.
+const fewestOrders = 15
+
+// topOrder is the highest order that has a value or a limit: a slow sampling rate shows few.
+func topOrder(ch report.Chart) float64 {
+	top := float64(fewestOrders)
+	for _, s := range ch.Series {
+		for i, h := range s.X {
+			if !math.IsNaN(value(s.Y, i)) {
+				top = math.Max(top, h)
+			}
+		}
+	}
+	for _, l := range ch.Limits {
+		for i, h := range l.X {
+			if !math.IsNaN(value(l.Y, i)) {
+				top = math.Max(top, h)
+			}
+		}
+	}
+	return top
 }
 
 // nameRoom is the space right of a panel for its channel's name.

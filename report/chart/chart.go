@@ -111,9 +111,20 @@ func ends(a report.Axis) (low, high float64) {
 
 func (p panel) point(x, y float64) vg.Point { return vg.Point{X: p.x.at(x), Y: p.y.at(y)} }
 
-// yTicks are the ticks of the panel's y axis, as many as its height has room for.
-func (p panel) yTicks() []tick {
-	return scaleTicks(p.y.low, p.y.high, min(max(3, int((p.y.to-p.y.from)/15)), 7))
+// yTicks are the ticks of the panel's y axis, as many as its height has room for, labelled in a unit's SI multiple.
+func (p panel) yTicks(scale report.Scale) []tick {
+	most := min(max(3, int((p.y.to-p.y.from)/15)), 7)
+	ticks := scaleTicks(p.y.low*scale.Factor, p.y.high*scale.Factor, most)
+	for i := range ticks {
+		ticks[i].at /= scale.Factor
+	}
+	return ticks
+}
+
+// scaleOf is the SI multiple of its unit that an axis is labelled in: 220000 V is hard to read and takes room.
+func scaleOf(a report.Axis) report.Scale {
+	low, high := ends(a)
+	return report.ScaleFor(a.Unit, low, high)
 }
 
 // scaleTicks are nice ticks, but at least two: one alone gives no scale.
@@ -161,14 +172,16 @@ func (p panel) nameX(a report.Axis, below vg.Length) {
 	p.FillText(letters(tickSize, false, Faint, draw.XRight, draw.YTop), vg.Point{X: p.Max.X, Y: p.Min.Y - below}, axisName(a))
 }
 
+// axisName names an axis and the unit it is labelled in.
 func axisName(a report.Axis) string {
+	unit := scaleOf(a).Unit
 	switch {
-	case a.Unit == "":
+	case unit == "":
 		return a.Label
 	case a.Label == "":
-		return a.Unit
+		return unit
 	}
-	return a.Label + ", " + a.Unit
+	return a.Label + ", " + unit
 }
 
 // Margins around the data, in points.

@@ -15,7 +15,7 @@ func drawField(c draw.Canvas, ch report.Chart, at Place) {
 		return
 	}
 	g := cropped(ch.Grid)
-	top := drawKey(c, axisName(ch.Y), nil)
+	top := drawKey(c, fieldName(ch.Y), nil)
 	below := vg.Length(belowOneRow)
 	if ch.X.Clock {
 		below = 30
@@ -28,6 +28,14 @@ func drawField(c draw.Canvas, ch report.Chart, at Place) {
 	p.axisX(p.timeTicks(ch, at), true)
 	p.nameX(timeAxis(ch.X, at), below-8.5)
 	drawScale(c, r, g, shades)
+}
+
+// fieldName names the rows; frequencies stay in Hz, as orders are counted in them.
+func fieldName(a report.Axis) string {
+	if a.Unit == "" {
+		return a.Label
+	}
+	return a.Label + ", " + a.Unit
 }
 
 // cropped leaves out the rows above the last one that has a value, for limits often end at order 25 or 40, and makes the
@@ -64,7 +72,7 @@ func fieldY(a report.Axis, g *report.Grid) report.Axis {
 
 // fieldAxis labels the rows: odd orders where rows are orders, else round numbers.
 func (p panel) fieldAxis(ch report.Chart) {
-	ticks := p.yTicks()
+	ticks := p.yTicks(report.Scale{Factor: 1})
 	if ch.Y.Unit == "" {
 		ticks = orderTicks(p.y.low, p.y.high, float64(p.y.to-p.y.from)/9)
 	}

@@ -60,7 +60,11 @@ func rung(c draw.Canvas, x span, y vg.Length, r Rung) {
 	Symbol(draw.Canvas{Canvas: c.Canvas, Rectangle: box}, r.Result)
 	label := report.Sig(r.Share) + " %"
 	style, at := letters(tickSize, true, Ink, draw.XLeft, -0.38), end+size/2+3
-	if at+widthOf(label, tickSize)+3 > x.to {
+	wide := widthOf(label, tickSize) + 3
+	if l := x.at(100); r.Share <= 100 && at+wide > l-2 {
+		at = l + 4 // clear of the limit's line
+	}
+	if at+wide > x.to {
 		style.XAlign, at = draw.XRight, end-size/2-3
 	}
 	c.FillText(style, vg.Point{X: at, Y: y}, label)

@@ -59,14 +59,15 @@ func drawLines(c draw.Canvas, ch report.Chart, at Place) {
 		below = 30
 	}
 	for i, r := range stack(c, top, right, below, weights) {
-		p := newPanel(c, r, ch.X, rowAxis(ch, rows[i]))
-		p.axisY(p.yTicks())
+		y := rowAxis(ch, rows[i])
+		p := newPanel(c, r, ch.X, y)
+		p.axisY(p.yTicks(scaleOf(y)))
 		p.shades(ch.Shades)
 		xticks := p.timeTicks(ch, at)
 		p.axisX(xticks, i == len(rows)-1)
 		p.lines(ch, rows[i], at.Bare)
 		if !rows[i].main {
-			p.FillText(letters(tickSize, false, Faint, draw.XLeft, draw.YTop), vg.Point{X: c.Min.X, Y: p.Max.Y + 3}, rows[i].series[0].Unit)
+			p.FillText(letters(tickSize, false, Faint, draw.XLeft, draw.YTop), vg.Point{X: c.Min.X, Y: p.Max.Y + 3}, scaleOf(y).Unit)
 		}
 		if i == len(rows)-1 {
 			p.nameX(timeAxis(ch.X, at), below-8.5)
@@ -100,7 +101,7 @@ func rowAxis(ch report.Chart, r row) report.Axis {
 	if r.main {
 		return ch.Y
 	}
-	var a report.Axis
+	a := report.Axis{Unit: r.series[0].Unit}
 	for _, s := range r.series {
 		for _, v := range s.Y {
 			if !math.IsNaN(v) {

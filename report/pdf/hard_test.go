@@ -24,6 +24,7 @@ var hard = map[string]func() *report.Survey{
 	"week":            func() *report.Survey { return report.Build(weekInputs()) },
 	"short":           fixture.Short,
 	"tiny":            fixture.Tiny,
+	"log":             fixture.Log,
 	"eleven channels": func() *report.Survey { return report.Build(withRoles(weekInputs(), site.Roles)) },
 	"voltages only": func() *report.Survey {
 		return report.Build(withRoles(weekInputs(), []site.Role{"V1", "V2", "V3"}))

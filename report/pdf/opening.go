@@ -41,8 +41,7 @@ func (d *document) keyFigure(above []block) []block {
 		return nil
 	}
 	figure := d.figure(d.charts[i])
-	_, used := heights(append(above, figure), true)
-	if used > d.pen.height-topMargin-bottomMargin {
+	if least, _ := heights(append(above, figure), true); least > d.pen.height-topMargin-bottomMargin {
 		return nil
 	}
 	d.charts = slices.Delete(d.charts, i, i+1)

@@ -1,6 +1,7 @@
 package pdf
 
 import (
+	"slices"
 	"strconv"
 	"strings"
 
@@ -27,7 +28,7 @@ func (d *document) blocks() []block {
 		d.figures(report.SpectrogramChart, ""), d.set("statistics"), d.set("days"), d.set("events"), d.set("excluded"))...)
 	out = append(out, d.part("Channels, phasors and power", d.set("channels"), d.figures(report.PhasorChart, ""), d.set("power"), d.listed("system"))...)
 	out = append(out, d.part("The plant", d.plant())...)
-	out = append(out, d.part("Order by order", d.set("orders-V"), d.set("orders-I"), d.set("orders-N"))...)
+	out = append(out, d.part("Order by order", d.orders("orders-V"), d.orders("orders-I"), d.orders("orders-N"))...)
 	out = append(out, d.part("Doubts", d.doubts())...)
 	out = append(out, d.part("Method", d.method())...)
 	out = append(out, d.part("Files", d.set("files"))...)
@@ -51,6 +52,23 @@ func (d *document) part(title string, contents ...[]block) []block {
 // set is a table by its key.
 func (d *document) set(key string) []block {
 	return d.table(d.tables[key])
+}
+
+// orders is a table of orders by its key, without the orders that the sampling rate does not reach.
+func (d *document) orders(key string) []block {
+	t := d.tables[key]
+	measured := func(row []report.Cell) bool {
+		return slices.ContainsFunc(row[min(2, len(row)):], func(c report.Cell) bool { return c.IsNum && c.Number.Known() })
+	}
+	last := len(t.Rows)
+	for last > 1 && !measured(t.Rows[last-1]) {
+		last--
+	}
+	if last < len(t.Rows) {
+		t.Notes = append([]string{"Orders above " + t.Rows[last-1][0].Text + ": not measured."}, t.Notes...)
+		t.Rows = t.Rows[:last]
+	}
+	return d.table(t)
 }
 
 // figures are the charts of a kind whose key begins with a prefix.

@@ -13,8 +13,9 @@ const (
 	markSize  = 6.2 // a verdict's symbol
 	markRoom  = 9.5
 	tableGap  = 14.0
-	longTable = 24 // rows from which a table of numbers is set densely, and a narrow one folded
-	firstRows = 6  // rows of such a table that stay with its head: a page should not end in a stub
+	noteGap   = 4.0 // between notes beside a table
+	longTable = 24  // rows from which a table of numbers is set densely, and a narrow one folded
+	firstRows = 6   // rows of such a table that stay together at its ends: a page should not end in a stub
 )
 
 // table makes the blocks of a table: title, head, rows, notes. Rows may go to another page, under the head again. A
@@ -28,23 +29,42 @@ func (d *document) table(t report.Table) []block {
 	if len(parts) == 1 && parts[0].total() <= d.main() && !parts[0].folds(d.full()) {
 		x, room = d.mainX(), d.main()
 	}
-	beside, below := t.Notes, []string(nil)
-	if x == d.left {
-		beside, below = nil, t.Notes
-	}
-	out := []block{d.tableTitle(t.Title, x, room, beside)}
+	var body []block
 	for i, g := range parts {
 		rows := d.gridBlocks(g, x, room)
 		if i > 0 {
 			rows[0].gap = tableGap
 		}
-		out = append(out, rows...)
+		body = append(body, rows...)
 	}
-	for _, n := range below {
+	if _, high := heights(body, true); x == d.mainX() && d.besideHeight(t.Notes) <= high {
+		return append([]block{d.tableTitle(t.Title, x, room, t.Notes)}, d.holdTogether(body, t.Notes)...)
+	}
+	out := append([]block{d.tableTitle(t.Title, x, room, nil)}, body...)
+	for _, n := range t.Notes {
 		out[len(out)-1].keep = true
 		out = append(out, d.note(n, x, room))
 	}
 	return out
+}
+
+// besideHeight is the height that notes take in the side column.
+func (d *document) besideHeight(notes []string) float64 {
+	sum := 0.0
+	for _, n := range notes {
+		sum += textHeight(sideFace, len(wrap(d.pen.measure, sideFace, n, d.side))) + noteGap
+	}
+	return sum
+}
+
+// holdTogether keeps as many rows with a table's title as the notes beside them are high.
+func (d *document) holdTogether(body []block, notes []string) []block {
+	need := d.besideHeight(notes)
+	for i := range body {
+		need -= body[i].natural
+		body[i].keep = body[i].keep || need > 0 && i < len(body)-1
+	}
+	return body
 }
 
 // gridBlocks are the head and the rows of one part of a table.
@@ -59,9 +79,9 @@ func (d *document) gridBlocks(g grid, x, room float64) []block {
 	} else {
 		g.widen(room)
 	}
-	first := 2
+	ends := 2
 	if g.dense() {
-		first = firstRows
+		ends = firstRows
 	}
 	head := d.headBlock(g, strips)
 	out := []block{head}
@@ -70,7 +90,7 @@ func (d *document) gridBlocks(g grid, x, room float64) []block {
 		for k := range row {
 			row[k].head = &head
 		}
-		row[len(row)-1].keep = i < min(first, rows)-1 || i == rows-2 // the last row never stands alone either
+		row[len(row)-1].keep = i < min(ends, rows)-1 || i < rows-1 && i >= rows-ends // nor begins one with a stub
 		out = append(out, row...)
 	}
 	return out
@@ -88,7 +108,7 @@ func (d *document) tableTitle(title string, x, room float64, side []string) bloc
 		at := y + 1
 		for _, n := range notes {
 			d.pen.lines(sideFace, chart.Faint, d.left, at, n)
-			at += textHeight(sideFace, len(n)) + 4
+			at += textHeight(sideFace, len(n)) + noteGap
 		}
 	})
 	b.keep = true
