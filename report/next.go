@@ -37,7 +37,7 @@ func repairRecord(s *Survey) string {
 		}
 		verify := "the doubt '" + d.Code + "' is gone when the new recording is surveyed."
 		if len(d.Proposal) > 0 {
-			return action("Check the hook-up and, where it confirms the proposal, put it into the site sheet ("+strings.Join(d.Proposal, "; ")+"): "+sentence(d.Text), verify)
+			return action("Check the hook-up (lines ready for the site sheet stand with the doubt '"+d.Code+"'): "+sentence(d.Text), verify)
 		}
 		return action("Record again with this put right: "+sentence(d.Text), verify)
 	}
