@@ -196,7 +196,9 @@ func (s *source) chooseChannels() error {
 		}
 		ch := channel{column: c}
 		ch.Unit, ch.shift = unitShift(col.Unit)
-		ch.FileUnit = col.Unit
+		if ch.FileUnit = col.Unit; col.Unit == "" {
+			ch.Unit, ch.FileUnit = col.CellUnit, col.CellUnit
+		}
 		ch.Name = unique(taken, col.Name, len(s.channels)+1)
 		s.channels = append(s.channels, ch)
 	}
@@ -362,7 +364,7 @@ func (s *source) rateFromStamps(points []timebase.Point, whole bool) (float64, e
 		s.note("rate-inferred", "", "Time stamps are too coarse to tell the sampling rate better than %.6g to %.6g Hz; %.7g is used. State sampling_rate under [file] in the site sheet if it is known.",
 			1/fit.Top, 1/fit.Low, rate)
 	}
-	if k := s.layout.Clock; k.Kind == table.NumberClock && !k.UnitStated && s.opt.File.TimeFormat == "" {
+	if k := s.layout.Clock; k.Kind == table.NumberClock && !k.UnitStated && rate < 1000 {
 		s.note("time-unit-assumed", "", "The time column does not say its unit; read as seconds it gives %.6g samples a second. If it is another unit, state time_format under [file] in the site sheet.", rate)
 	}
 	return rate, nil

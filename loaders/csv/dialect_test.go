@@ -140,7 +140,7 @@ var dialects = []struct {
 	{name: "delimiter at the line's end", w: writing{head: "time (s);V1 (V);V2 (V);I1 (A);\n", delimiter: ";", end: "\n", time: seconds(7), number: point(3), row: func(_ int, s string) string { return s + ";" }}},
 	{name: "scientific notation", w: writing{head: "time (s),V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.9E", float64(r)/signalRate) }, number: func(v float64) string { return fmt.Sprintf("%.5e", v) }}},
 	{name: "leading zeros", w: writing{head: "time (s),V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: seconds(7), number: func(v float64) string { return fmt.Sprintf("%+010.3f", v) }}},
-	{name: "no header, time column", w: writing{delimiter: ",", end: "\n", time: seconds(6), number: point(3)}, names: "CH1|CH2|CH3", units: "- - -", notes: "time-unit-assumed"},
+	{name: "no header, time column", w: writing{delimiter: ",", end: "\n", time: seconds(6), number: point(3)}, names: "CH1|CH2|CH3", units: "- - -"},
 	{name: "no header, no time column", w: writing{delimiter: ",", end: "\n", number: point(3)}, rate: signalRate, names: "CH1|CH2|CH3", units: "- - -", reading: "no column tells the time"},
 	{name: "header, no time column", w: writing{head: "V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", number: point(3)}, file: site.File{SamplingRate: signalRate}},
 	{name: "sampling rate above the table", w: writing{head: "Invented recorder;\nSampling rate:;3,2 kHz\nStart;14.03.2026 09:59:59\n\nU1 [V];U2 [V];I1 [A]\n", delimiter: ";", end: "\n", number: comma(3)}, names: "U1|U2|I1", start: "2026-03-14T09:59:59"},
@@ -153,7 +153,7 @@ var dialects = []struct {
 			return "Sample Interval,3.125E-04,," + s
 		}
 		return ",,," + s
-	}}, names: "CH1|CH2|CH3", units: "- - -", notes: "time-unit-assumed"},
+	}}, names: "CH1|CH2|CH3", units: "- - -"},
 	{name: "two heading rows, source and unit", w: writing{head: "x-axis,1,2,3\nsecond,Volt,Volt,Ampere\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%+.7E", float64(r)/signalRate) }, number: point(3)}, names: "1|2|3", units: "Volt Volt Ampere"},
 	{name: "many lines above and below", w: writing{head: strings.Repeat("Remark: 1,2 and 3 of many\n", 150) + "\ntime (s),V1 (V),V2 (V),I1 (A)\n", foot: "\nEnd of data\nChecksum,1234\n", delimiter: ",", end: "\n", time: seconds(7), number: point(3)}, notes: "lines-skipped"},
 	{name: "comment lines", w: writing{head: "# made up\n# time (s),V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: seconds(7), number: point(3)}},
@@ -188,6 +188,22 @@ var dialects = []struct {
 		file: site.File{Delimiter: ":", Decimal: ",", Encoding: "iso-8859-1", HeaderLines: two(), TimeColumn: "1", TimeFormat: "s"}, names: "CH1|CH2|CH3", units: "- - -"},
 	{name: "time column put aside", w: writing{head: "time (s),V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprint(r) }, number: point(3)}, file: site.File{TimeColumn: "none", SamplingRate: signalRate}, notes: "column-skipped"},
 	{name: "rate declared against the stamps", w: writing{head: "time,V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.4f", float64(r)/signalRate*1e3) }, number: point(3)}, file: site.File{SamplingRate: signalRate}, notes: "time-unit-assumed time-base-conflict"},
+	{name: "description below the names, units below that", w: writing{head: "time,V1,V2,I1\nelapsed,phase,phase,phase\ns,V,V,A\n", delimiter: ",", end: "\n", time: seconds(7), number: point(3)}},
+	{name: "units in the cells", w: writing{head: "time;V1;V2;I1\n", delimiter: ";", end: "\n", time: seconds(7), number: func(v float64) string { return fmt.Sprintf("%.6f kV", v/1e3) },
+		row: func(_ int, s string) string {
+			at := strings.LastIndexByte(s, ';')
+			return s[:at] + strings.Replace(s[at:], "kV", "kA", 1)
+		}}},
+	{name: "names with their unit as a letter", w: writing{head: "Time (s),Line 1 V,Line 2 V,Line 1 A\n", delimiter: ",", end: "\n", time: seconds(7), number: point(3)}, names: "Line 1 V|Line 2 V|Line 1 A", units: "V - A"},
+	{name: "units in words", w: writing{head: "t in s;U1 in V;U2 in V;I1 in A\n", delimiter: ";", end: "\n", time: seconds(7), number: point(3)}, names: "U1|U2|I1"},
+	{name: "more cells in the first rows", w: writing{head: "time (s),V1 (V),V2 (V),I1 (A),,Setting,Content\n", delimiter: ",", end: "\n", time: seconds(7), number: point(3), row: func(r int, s string) string {
+		return s + []string{",,Range,500", ",,Probe,10", ",,,"}[min(r, 2)]
+	}}, notes: "column-skipped column-skipped"},
+	{name: "hint to a spreadsheet", w: writing{head: "sep=;\ntime (s);V1 (V);V2 (V);I1 (A)\n", delimiter: ";", end: "\n", time: seconds(7), number: point(3)}},
+	{name: "pairs of time and value", w: writing{head: "Waveform 1;;Waveform 2;;Waveform 3;\nTime (s);V1 (V);Time (s);V2 (V);Time (s);I1 (A)\n", delimiter: ";", end: "\n", time: seconds(7), number: point(3), row: func(r int, s string) string {
+		f := strings.Split(s, ";")
+		return strings.Join([]string{f[0], f[1], f[0], f[2], f[0], f[3]}, ";")
+	}}, notes: "column-skipped column-skipped"},
 	{name: "unit of time declared", w: writing{head: "time,V1 (V),V2 (V),I1 (A)\n", delimiter: ",", end: "\n", time: func(r int) string { return fmt.Sprintf("%.4f", float64(r)/signalRate*1e3) }, number: point(3)}, file: site.File{TimeFormat: "ms"}},
 }
 

@@ -338,3 +338,22 @@ func TestBlocksCanBeLeftAndReadAgain(t *testing.T) {
 		t.Errorf("rows are in %v, want one run of %d", got, signalRows)
 	}
 }
+
+// TestTablesBeyondMeasure are refused with a reason, and quickly.
+func TestTablesBeyondMeasure(t *testing.T) {
+	row := func(cells int, cell string) string { return strings.Repeat(cell+",", cells-1) + cell + "\n" }
+	for name, test := range map[string]struct{ text, want string }{
+		"endless line":       {strings.Repeat("1.5,", 1<<20), "signal.csv:1: the line is longer than 1 MiB; this is no table with one sample a row: export it so"},
+		"quarter of million": {row(250_000, "1") + row(250_000, "2"), "signal.csv: rows have 250000 columns, more than the 8192 that are read; export fewer"},
+		"thousand channels":  {row(1000, "1.5") + row(1000, "2.5") + row(1000, "3.5"), "signal.csv:1: rows have 1000 channels, more than the 512 that are read; export fewer, one row a sample"},
+	} {
+		begin := time.Now()
+		_, err := csv.Open(file(t, test.text), input.Options{Rate: 1000})
+		if err == nil || err.Error() != test.want {
+			t.Errorf("%s: error is %v, want %s", name, err, test.want)
+		}
+		if took := time.Since(begin); took > 5*time.Second {
+			t.Errorf("%s: it took %v", name, took)
+		}
+	}
+}

@@ -9,6 +9,7 @@ import (
 	"strings"
 
 	"wavetally/harmonics/site"
+	"wavetally/harmonics/wave"
 )
 
 // A guesser finds the columns of a table whose dialect is known.
@@ -40,13 +41,16 @@ func (g *guesser) layout() (Layout, error) {
 	return l, nil
 }
 
-// row splits lines[i], less one delimiter at its end beyond the table's width.
-func (g *guesser) row(i int) [][]byte {
-	row := cells(nil, g.lines[i].text, g.delimiter)
-	if len(row) == g.width+1 && len(Trim(row[g.width])) == 0 {
-		row = row[:g.width]
+// row splits lines[i].
+func (g *guesser) row(i int) [][]byte { return cells(nil, g.lines[i].text, g.delimiter) }
+
+// used is the number of columns up to the last that holds anything.
+func (g *guesser) used() int {
+	n := g.width
+	for n > 1 && g.kinds[n-1] == Empty {
+		n--
 	}
-	return row
+	return n
 }
 
 // keptRows is the number of rows that columns are classified by: enough to see a time advance.
@@ -172,12 +176,18 @@ func (g *guesser) headings() []Column {
 			units = row
 			continue
 		}
-		if names == nil && g.isNameRow(row) {
+		switch {
+		case names == nil && g.isNameRow(row):
 			names = row
-		} else if names != nil {
+			continue
+		case names != nil && !distinct(names) && g.isNameRow(row) && distinct(row) && filled(row) >= filled(names):
+			names = row // what stands below describes channels by more than their names
+		}
+		if names != nil {
 			break
 		}
 	}
+	splitPairs(names)
 	for c := range columns {
 		if names != nil && c < len(names) {
 			columns[c].Name, columns[c].Unit = splitUnit(names[c])
@@ -217,7 +227,7 @@ func (g *guesser) headingRow(text []byte) []string {
 	for len(row) > g.width && len(Trim(row[len(row)-1])) == 0 {
 		row = row[:len(row)-1]
 	}
-	if len(row) > g.width || len(row) < g.width-1 || len(row) < 1 || len(row) < 2 && g.width > 1 {
+	if len(row) > g.width || len(row) < g.used()-1 || len(row) < 2 && g.width > 1 {
 		return nil
 	}
 	texts := make([]string, len(row))
@@ -262,6 +272,50 @@ func (g *guesser) isNameRow(row []string) bool {
 	return text > 0 && text > number && (len(row) > 2 || number == 0)
 }
 
+// distinct reports whether no two cells are the same, empty ones aside.
+func distinct(row []string) bool {
+	seen := map[string]bool{}
+	for _, cell := range row {
+		if cell != "" && seen[cell] {
+			return false
+		}
+		seen[cell] = true
+	}
+	return true
+}
+
+// filled counts the cells that hold something.
+func filled(row []string) int {
+	n := 0
+	for _, cell := range row {
+		if cell != "" {
+			n++
+		}
+	}
+	return n
+}
+
+// splitPairs adds units in brackets where a heading is there once with V and once with A behind it, as in "Line 1 V"
+// and "Line 1 A": such letters are no phases.
+func splitPairs(names []string) {
+	seen := map[string]bool{}
+	for _, n := range names {
+		seen[n] = true
+	}
+	for i, n := range names {
+		rest, isV := strings.CutSuffix(n, " V")
+		if !isV {
+			var isA bool
+			if rest, isA = strings.CutSuffix(n, " A"); !isA {
+				continue
+			}
+		}
+		if seen[rest+" V"] && seen[rest+" A"] && !seen[rest+" B"] && !seen[rest+" U"] {
+			names[i] = n + " (" + n[len(n)-1:] + ")"
+		}
+	}
+}
+
 // chooseValues marks what holds measured values, and says of the rest why it is not read.
 func (g *guesser) chooseValues(l *Layout) {
 	for c := range l.Columns {
@@ -277,8 +331,25 @@ func (g *guesser) chooseValues(l *Layout) {
 			}
 		default:
 			col.Use = Value
+			col.CellUnit = g.cellUnit(c)
 		}
 	}
+}
+
+// cellUnit finds the unit that a column's cells carry themselves, as in "230.1 V".
+func (g *guesser) cellUnit(c int) string {
+	for i := g.first; i < min(len(g.lines), g.first+20); i++ {
+		row := g.row(i)
+		if c >= len(row) {
+			continue
+		}
+		cell := string(Trim(row[c]))
+		at := strings.LastIndexAny(cell, "0123456789., ")
+		if base, _, ok := wave.BaseUnit(cell[at+1:]); ok && at >= 0 {
+			return base
+		}
+	}
+	return ""
 }
 
 // falls reports whether a column goes down more often than the rare resets of a clock do. A coarse time may well stand

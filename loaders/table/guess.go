@@ -161,9 +161,6 @@ func tryDialect(lines []line, d dialect) trial {
 	for _, l := range lines {
 		row = cells(row, l.text, d.delimiter)
 		width := len(row)
-		if width > 1 && d.delimiter != ' ' && len(Trim(row[width-1])) == 0 {
-			width-- // a delimiter at the end of the line
-		}
 		score, withMark := rowScore(row, d.mark)
 		scores[width] += score
 		marked[width] += withMark

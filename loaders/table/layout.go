@@ -24,6 +24,9 @@ type Column struct {
 	Unit string // as written; "" when the header has none
 	Use  Use
 	Why  string // why the column is not read
+
+	// CellUnit is the base unit that the cells carry themselves; their values come out in it.
+	CellUnit string
 }
 
 // A ClockKind says in what form rows carry their time.

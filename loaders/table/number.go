@@ -119,8 +119,8 @@ var missing = map[string]bool{"-": true, "--": true, "---": true, "----": true, 
 	"under": true, "+over": true, "-over": true, "ovr": true, "ovl": true, "ovld": true, "ovrng": true, "ol": true, "+ol": true,
 	"-ol": true, "o.l": true, "o.l.": true, "overrange": true, "over range": true, "overload": true, "overflow": true,
 	"underflow": true, "clip": true, "clipped": true, "invalid": true, "bad": true, "missing": true, "no data": true,
-	"nodata": true, "error": true, "err": true, "fault": true, "off": true, "?": true, "??": true, "???": true,
-	"*": true, "**": true, "***": true, "****": true, "*****": true, "x": true, ".": true, "..": true, "...": true,
+	"nodata": true, "error": true, "err": true, "fault": true, "?": true, "??": true, "???": true,
+	"*": true, "**": true, "***": true, "****": true, "*****": true, ".": true, "..": true, "...": true,
 	"…": true, "–": true, "—": true}
 
 // Cell reads one cell, quotes and blanks around it included, the slow and lenient way: thousands separators, a

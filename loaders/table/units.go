@@ -67,8 +67,12 @@ func splitUnit(heading string) (name, unit string) {
 		return heading, ""
 	}
 	rest, u := strings.TrimRight(heading[:at], "/,_; "), heading[at+1:]
-	sure := heading[at] == '/' || heading[at] == ',' || strings.HasSuffix(strings.TrimSpace(heading[:at]), ",") ||
-		strings.HasSuffix(strings.TrimSpace(heading[:at]), "/")
+	before := strings.TrimSpace(heading[:at])
+	bare, in := strings.CutSuffix(before, " in") // "U1 in kV"
+	sure := in || heading[at] == '/' || heading[at] == ',' || strings.HasSuffix(before, ",") || strings.HasSuffix(before, "/")
+	if in {
+		rest = bare
+	}
 	switch _, _, electric := wave.BaseUnit(u); {
 	case rest == "" || !knownUnit(u):
 		return heading, ""
