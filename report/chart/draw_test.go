@@ -202,3 +202,23 @@ func TestLadderNamesEveryRung(t *testing.T) {
 		}
 	}
 }
+
+// High voltages are labelled in kV, with short numbers.
+func TestAxesAreLabelledInMultiples(t *testing.T) {
+	ch := report.Chart{Kind: report.WaveformChart, X: report.Axis{Unit: "ms", High: 20}, Y: report.Axis{Label: "voltage", Unit: "V", Low: -200e3, High: 200e3},
+		Series: []report.Series{{Name: "V1", Role: "V1", Use: report.Measured, Unit: "V", X: []float64{0, 20}, Y: []float64{-180e3, 180e3}}}}
+	d := record(t, func(c draw.Canvas) { Draw(c, ch, Place{}) })
+	if !d.says("voltage, kV") || !d.says("200") || d.says("200000") {
+		t.Errorf("texts %v", d.texts)
+	}
+}
+
+// A slow sampling rate reaches few orders: the axis ends soon after them.
+func TestSpectrumEndsWhereMeasurementDoes(t *testing.T) {
+	ch := spectrum([]float64{1, 2, 1, 1}, nil, nil)
+	ch.X.High = 51
+	d := record(t, func(c draw.Canvas) { Draw(c, ch, Place{}) })
+	if !d.says("15") || d.says("17") {
+		t.Errorf("texts %v", d.texts)
+	}
+}

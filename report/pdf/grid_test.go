@@ -104,6 +104,23 @@ func TestLongNarrowTablesFold(t *testing.T) {
 	}
 }
 
+// Orders that the sampling rate does not reach are left out, and said so.
+func TestOrdersEndWhereMeasurementDoes(t *testing.T) {
+	d := blankDocument()
+	table := numbers(50, 1)
+	for r := range table.Rows {
+		for c := range table.Rows[r] {
+			table.Rows[r][c] = report.Cell{Text: fmt.Sprint(r + 1), Number: report.Number(r), IsNum: r < 8 || c < 2}
+		}
+	}
+	d.tables = map[string]report.Table{"orders-V": table}
+	_, all := heights(d.table(table), true)
+	_, shown := heights(d.orders("orders-V"), true)
+	if shown > all/2 {
+		t.Errorf("8 orders of 50 take %.0f of %.0f", shown, all)
+	}
+}
+
 // A row of more lines than a page has is not cut.
 func TestEndlessCells(t *testing.T) {
 	d := blankDocument()

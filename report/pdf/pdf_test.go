@@ -184,7 +184,7 @@ func poppler(t *testing.T, file []byte) []page {
 
 // Nothing is cut off and nothing stands upon something else, on both papers, whatever the survey.
 func TestEveryWordHasItsPlace(t *testing.T) {
-	const left, right, edge = 46, 42, 0.8 // margins of the page; a glyph may reach over its own box by a hair
+	const left, right, edge = 46, 42, 0.8                                                 // margins of the page; a glyph may reach over its own box by a hair
 	onLetter := []string{"week", "tiny", "eleven channels", "long words", "not measured"} // the ones that have failed there
 	for name := range surveys() {
 		for _, paper := range []string{"A4", "Letter"} {
