@@ -22,25 +22,42 @@ func terminalWidth(w io.Writer) int {
 	return width
 }
 
-// progress shows how far a measurement is, on stderr when that is a terminal. The returned function is told the
-// seconds of recording done and in all; done ends the display.
+// progress shows how far a measurement is, with its rate in seconds of recording a second and the time that remains, on
+// stderr when that is a terminal. The returned function is told the seconds of recording done and in all; end takes the
+// display away.
 func (a *app) progress(what string) (tell func(done, total float64), end func()) {
 	if terminalWidth(a.err) == 0 {
 		return nil, func() {}
 	}
-	const parts = 1000
-	bar := progressbar.NewOptions(parts,
+	var bar *progressbar.ProgressBar
+	tell = func(done, total float64) {
+		length := int64(total) + 1
+		if total <= 0 {
+			length = -1 // the file does not tell: how far, but not how far of what
+		}
+		if bar == nil {
+			bar = a.bar(what, length)
+		}
+		_ = bar.Set64(int64(done)) // a display that fails is no reason to stop measuring
+	}
+	end = func() {
+		if bar != nil {
+			_ = bar.Finish()
+		}
+	}
+	return tell, end
+}
+
+func (a *app) bar(what string, seconds int64) *progressbar.ProgressBar {
+	return progressbar.NewOptions64(seconds,
 		progressbar.OptionSetWriter(a.err),
 		progressbar.OptionSetDescription(what),
-		progressbar.OptionSetWidth(30),
+		progressbar.OptionSetWidth(24),
 		progressbar.OptionThrottle(100*time.Millisecond),
+		progressbar.OptionShowCount(),
+		progressbar.OptionShowIts(),
+		progressbar.OptionSetItsString("s of recording"),
 		progressbar.OptionSetPredictTime(true),
 		progressbar.OptionClearOnFinish(),
 	)
-	tell = func(done, total float64) {
-		if total > 0 {
-			_ = bar.Set(int(parts * min(done/total, 1))) // a display that fails is no reason to stop measuring
-		}
-	}
-	return tell, func() { _ = bar.Finish() }
 }
