@@ -222,11 +222,13 @@ func (a *assessment) noise() {
 		if floor <= noiseCaution || a.has("low-resolution", c.Role) || a.has("clipped", c.Role) || a.has("aliasing-possible", c.Role) {
 			continue
 		}
-		longer := (floor / noiseCaution) * (floor / noiseCaution)
+		// A vector mean over n windows has the noise of one over √n; the rms that limits are about keeps it all.
+		window := float64(a.sum.Windows.Cycles) / a.sum.Nominal
+		long := window * (floor / noiseCaution) * (floor / noiseCaution)
 		a.add(Doubt{Code: "noise-floor", Weight: Caution, Channel: c.Role,
-			Text: fmt.Sprintf("Noise puts %s %% of %s into each order of %s, more than half of the smallest limits (0.3 %%): high orders cannot be judged. Use a smaller range or a better sensor; in the mean over the record, a record %s times as long would bring it to half the limit.",
-				figure(floor), of, c.Role, figure(longer)),
-			Evidence: map[string]float64{"floor_pct": floor, "longer_times": longer}})
+			Text: fmt.Sprintf("Noise puts %s %% of %s into each order of %s, more than half of the smallest limits (0.3 %%): high orders cannot be judged by their rms. Use a smaller range or a better sensor; a steady harmonic at that limit shows in the mean angle of a record of %s or more.",
+				figure(floor), of, c.Role, length(long)),
+			Evidence: map[string]float64{"floor_pct": floor, "long_enough_s": long}})
 	}
 }
 
