@@ -68,6 +68,8 @@ type run struct {
 	pending int   // rows of another shape, to be handed over only if rows of the right one follow
 	jumps   jumps
 	stretch float64
+	step    float64  // s, resolution of the stamps at hand
+	rates   []string // other rates than the first, in words
 	stopped bool
 }
 
@@ -136,7 +138,8 @@ func (r *run) hand(c *chunk, n int) bool {
 		return r.emit(c, 0, n, r.at(0))
 	}
 	if k := r.source.layout.Clock; k.Kind != table.IndexClock {
-		r.tracker.Allow(resolution(k, c.decimals()))
+		r.step = resolution(k, c.decimals())
+		r.tracker.Allow(r.step)
 	}
 	from, at := 0, 0.0
 	for i := range n {
@@ -150,13 +153,40 @@ func (r *run) hand(c *chunk, n int) bool {
 		if i > from && !r.emit(c, from, i, at) {
 			return false
 		}
-		r.jumps.add(event, t, r.tracker.Off())
 		if r.rows > 0 {
 			r.block.Segment++
+		}
+		if !r.newRate(c.times[i:n], t) {
+			r.jumps.add(event, t, r.tracker.Off())
 		}
 		from, at = i, t
 	}
 	return r.emit(c, from, n, at)
+}
+
+// newRate looks whether the rows from time at on keep another rate, and goes over to it if they do.
+func (r *run) newRate(stamps []float64, at float64) bool {
+	if r.stretch != 1 || r.tracker.Keeps(stamps) {
+		return false
+	}
+	points := make([]timebase.Point, len(stamps))
+	for i, t := range stamps {
+		points[i] = timebase.Point{Row: int64(i), T: t, Step: r.step}
+	}
+	fit, err := timebase.From(points, r.source.originSeconds())
+	if err != nil {
+		return false
+	}
+	rate := fit.Rate()
+	if math.Abs(rate-r.block.Rate) < 1e-3*rate {
+		return false
+	}
+	r.tracker.Restart(fit, rate)
+	r.tracker.Allow(r.step)
+	if r.block.Rate = rate; len(r.rates) < 4 {
+		r.rates = append(r.rates, fmt.Sprintf("%.7g Hz from %.6g s", rate, at))
+	}
+	return true
 }
 
 func resolution(k table.Clock, digits int) float64 {

@@ -2,6 +2,7 @@ package csv
 
 import (
 	"fmt"
+	"strings"
 
 	"wavetally/harmonics/wave"
 	"wavetally/loaders/timebase"
@@ -14,10 +15,14 @@ type jumps struct {
 	gapAt       float64 // s, of the first gap
 	gapLength   float64 // s, of the first
 	backAt      float64
+	runStart    float64 // s, of the present run of rows that follow on
+	longest     float64 // s, of such a run
 }
 
 // add counts one event before the row at time t, which came off seconds later than expected.
 func (j *jumps) add(e timebase.Event, t, off float64) {
+	j.endRun(t - max(off, 0))
+	j.runStart = t
 	switch e {
 	case timebase.Back:
 		if j.backs == 0 {
@@ -32,6 +37,9 @@ func (j *jumps) add(e timebase.Event, t, off float64) {
 		j.lost += off
 	}
 }
+
+// endRun closes a run of rows at time t.
+func (j *jumps) endRun(t float64) { j.longest = max(j.longest, t-j.runStart) }
 
 func (s *source) addNote(code, channel, text string, args ...any) {
 	s.notes = append(s.notes, wave.Note{Code: code, Channel: channel, Text: fmt.Sprintf(text, args...)})
@@ -55,11 +63,19 @@ func (r *run) end() {
 
 func (r *run) noteJumps() {
 	s, j := r.source, r.jumps
+	end := r.block.At + float64(r.block.Len())/r.block.Rate
+	j.endRun(end)
+	const short = 3 // s; a recorder's snapshots are of a few cycles up to a few seconds
 	switch {
+	case j.gaps > 0 && j.longest <= short && j.lost > j.longest*float64(j.gaps):
+		s.addNote("snapshot-series", "", "The recording is %d snapshots of at most %.3g s each over %.6g s; what happened between them is not known.", j.gaps+1, j.longest, end)
 	case j.gaps == 1:
 		s.addNote("gap", "", "The time stamps jump by %.6g s at %.6g s: rows are missing there.", j.gapLength, j.gapAt)
 	case j.gaps > 1:
 		s.addNote("gap", "", "The time stamps jump forward in %d places, by %.6g s in all, first by %.6g s at %.6g s: rows are missing there.", j.gaps, j.lost, j.gapLength, j.gapAt)
+	}
+	if len(r.rates) > 0 {
+		s.addNote("rate-change", "", "The sampling rate changes within the file: %.7g Hz at first, %s.", s.header.Rate, strings.Join(r.rates, ", "))
 	}
 	if j.backs > 0 {
 		s.addNote("clock-jump", "", "The time stamps go back in %d %s, first at %.6g s; the rows after it are placed right behind those before.", j.backs, plural(j.backs, "place", "places"), j.backAt)

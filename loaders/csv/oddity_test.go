@@ -112,6 +112,29 @@ var oddities = []struct {
 			"ragged-rows: 3 rows have too few or too many cells, first line 6404; their samples count as missing."},
 }
 
+// TestSnapshotsInOneFile reads a few cycles every ten minutes.
+func TestSnapshotsInOneFile(t *testing.T) {
+	var b strings.Builder
+	b.WriteString("time,V1 (V)\n")
+	start := time.Date(2026, 3, 14, 9, 0, 0, 0, time.UTC)
+	var want []span
+	for shot := range 20 {
+		want = append(want, span{float64(shot) * 600, 500})
+		for r := range 500 {
+			at := start.Add(time.Duration(shot)*10*time.Minute + time.Duration(r)*200*time.Microsecond)
+			fmt.Fprintf(&b, "%s,%.2f\n", at.Format("2006-01-02 15:04:05.0000"), sample(0, r))
+		}
+	}
+	src := open(t, b.String(), input.Options{})
+	if got := spans(t, src); src.Header().Rate != 5000 || !sameSpans(got, want) {
+		t.Errorf("at %v Hz rows are in %v, want %v", src.Header().Rate, got, want)
+	}
+	const note = "snapshot-series: The recording is 20 snapshots of at most 0.1 s each over 11400.1 s; what happened between them is not known."
+	if got := noteTexts(src); got != note {
+		t.Errorf("notes are %s, want %s", got, note)
+	}
+}
+
 func drop(s string, yes bool) string {
 	if yes {
 		return ""
@@ -355,5 +378,57 @@ func TestTablesBeyondMeasure(t *testing.T) {
 		if took := time.Since(begin); took > 5*time.Second {
 			t.Errorf("%s: it took %v", name, took)
 		}
+	}
+}
+
+// TestRateThatChanges reads a recorder's slow stretch, its fast one after a trigger, and the slow one again.
+func TestRateThatChanges(t *testing.T) {
+	var b strings.Builder
+	b.WriteString("time (s),V1 (V)\n")
+	at := 0.0
+	for r := range 12000 {
+		fmt.Fprintf(&b, "%.6f,%d\n", at, r)
+		if r >= 4000 && r < 9000 {
+			at += 1e-4
+		} else {
+			at += 1e-3
+		}
+	}
+	src := open(t, b.String(), input.Options{})
+	type stretch struct {
+		at, rate float64
+		rows     int
+	}
+	var got []stretch
+	row := 0
+	for b, err := range src.Blocks() {
+		if err != nil {
+			t.Fatal(err)
+		}
+		for _, v := range b.Data[0] {
+			if v != float64(row) {
+				t.Fatalf("row %d holds %v", row, v)
+			}
+			row++
+		}
+		if n := len(got); n > 0 && got[n-1].rate == b.Rate {
+			got[n-1].rows += b.Len()
+			continue
+		}
+		got = append(got, stretch{b.At, b.Rate, b.Len()})
+	}
+	// The first row after a change is within a step of either rate.
+	want := []stretch{{0, 1000, 4001}, {4.0001, 10000, 5000}, {4.501, 1000, 2999}}
+	if len(got) != len(want) {
+		t.Fatalf("stretches are %v, want %v", got, want)
+	}
+	for i := range want {
+		if math.Abs(got[i].at-want[i].at) > 1.1e-3 || got[i].rate != want[i].rate || math.Abs(float64(got[i].rows-want[i].rows)) > 2 {
+			t.Errorf("stretch %d is %v, want %v", i, got[i], want[i])
+		}
+	}
+	const note = "rate-change: The sampling rate changes within the file: 1000 Hz at first, 10000 Hz from 4.001 s, 1000 Hz from 4.501 s."
+	if got := noteTexts(src); !strings.HasPrefix(got, "rate-change: The sampling rate changes within the file: 1000 Hz at first, 10000 Hz from 4.00") || strings.Contains(got, "|") {
+		t.Errorf("notes are %s, want about %s", got, note)
 	}
 }

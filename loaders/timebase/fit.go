@@ -87,7 +87,8 @@ func From(points []Point, origin float64) (Fit, error) {
 	return f, nil
 }
 
-// roughInterval is the median interval over pairs of rows, as far apart as their resolution and jitter need.
+// roughInterval is the interval that half of all pairs of rows agree on, the rows being as far apart as their resolution
+// and jitter need for that.
 func roughInterval(points []Point) float64 {
 	for lag := 1; ; lag *= 2 {
 		slopes := make([]float64, 0, len(points))
@@ -96,12 +97,26 @@ func roughInterval(points []Point) float64 {
 			slopes = append(slopes, (b.T-a.T)/float64(b.Row-a.Row))
 		}
 		slices.Sort(slopes)
-		n := len(slopes)
-		middle := slopes[n/2]
-		if middle > 0 && slopes[n*3/4]-slopes[n/4] < 0.03*middle || lag*4 > len(points) {
+		low, high := shortestHalf(slopes)
+		switch middle := (low + high) / 2; {
+		case middle > 0 && high-low < 0.03*middle:
 			return middle
+		case lag*4 > len(points):
+			return slopes[len(slopes)/2]
 		}
 	}
+}
+
+// shortestHalf is the narrowest range that holds half of the sorted values.
+func shortestHalf(sorted []float64) (low, high float64) {
+	half := len(sorted) / 2
+	low, high = sorted[0], sorted[len(sorted)-1]
+	for i := 0; i+half < len(sorted); i++ {
+		if sorted[i+half]-sorted[i] < high-low {
+			low, high = sorted[i], sorted[i+half]
+		}
+	}
+	return low, high
 }
 
 // longestRun is the longest stretch of rows whose steps are even, within the resolution, a share of slack, and where

@@ -7,10 +7,9 @@ type Event uint8
 
 // Events.
 const (
-	Follows   Event = iota // the row follows on
-	Gap                    // rows are missing before it
-	Back                   // the clock went back; the row is placed right behind the one before
-	NewRhythm              // the row begins a stretch that does not keep the rate
+	Follows Event = iota // the row follows on
+	Gap                  // rows are missing before it
+	Back                 // the clock went back; the row is placed right behind the one before
 )
 
 // A Tracker compares rows' stamps with the rows' number, and says where a row does not follow on.
@@ -88,25 +87,28 @@ func (k *Tracker) step(t, expected, off float64) (Event, float64) {
 // Off is how far the row of the last event that was not Follows lay from where it was expected, in s.
 func (k *Tracker) Off() float64 { return k.off }
 
-// Rhythm reports whether stamps, which follow one after the other, keep the rate.
-func (k *Tracker) Rhythm(stamps []float64) bool {
-	if len(stamps) < 3 {
+// Keeps reports whether stamps, one row after the other, keep the rate, going by the first few dozen. Too few stamps
+// are taken to do so.
+func (k *Tracker) Keeps(stamps []float64) bool {
+	const few = 8
+	stamps = stamps[:min(len(stamps), 64)]
+	if len(stamps) < few {
 		return true
 	}
 	off := 0
-	for i := 1; i < len(stamps); i++ {
-		if math.Abs(stamps[i]-stamps[i-1]-1/k.rate) > k.tolerance {
+	for i := few / 2; i < len(stamps); i++ {
+		span := stamps[i] - stamps[i-few/2]
+		if math.Abs(span-few/2/k.rate) > k.tolerance {
 			off++
 		}
 	}
-	return off*2 < len(stamps)
+	return off*2 < len(stamps)-few/2
 }
 
 // Restart changes the rate from the segment that has just begun on.
 func (k *Tracker) Restart(f Fit, rate float64) {
-	k.rate = rate
+	k.rate, k.drift = rate, 0
 	k.tolerance = 0.5/rate + 1.5*f.Jitter
-	k.drift = 0
 }
 
 // Rate is the rate of the present segment.
