@@ -76,31 +76,40 @@ func declaredDelimiter(text string) (byte, bool, error) {
 	return text[0], true, nil
 }
 
+func declaredMark(text string) (byte, bool, error) {
+	switch text {
+	case "":
+		return 0, false, nil
+	case ".", ",":
+		return text[0], true, nil
+	}
+	return 0, false, &FormatError{Msg: fmt.Sprintf("decimal %q in the site sheet is not a decimal mark; use \".\" or \",\"", text)}
+}
+
 // guessDialect tries each delimiter with each decimal mark and takes the pair by which most cells are numbers.
 func guessDialect(lines []line, declared site.File) (dialect, error) {
-	delimiter, fixed, err := declaredDelimiter(declared.Delimiter)
+	delimiters, marks := []byte{'\t', ';', ',', '|', ' ', 0}, []byte{'.', ','}
+	delimiter, delimiterSaid, err := declaredDelimiter(declared.Delimiter)
 	if err != nil {
 		return dialect{}, err
 	}
-	delimiters := []byte{'\t', ';', ',', '|', ' ', 0}
-	if fixed {
+	mark, markSaid, err := declaredMark(declared.Decimal)
+	if err != nil {
+		return dialect{}, err
+	}
+	if delimiterSaid {
 		delimiters = []byte{delimiter}
 	}
-	marks := []byte{'.', ','}
-	if declared.Decimal != "" {
-		if declared.Decimal != "." && declared.Decimal != "," {
-			return dialect{}, &FormatError{Msg: fmt.Sprintf("decimal %q in the site sheet is not a decimal mark; use \".\" or \",\"", declared.Decimal)}
-		}
-		marks = []byte{declared.Decimal[0]}
+	if markSaid {
+		marks = []byte{mark}
 	}
 	sample := thin(lines, sampleLines)
 	var best trial
 	for _, d := range delimiters {
 		for _, m := range marks {
-			if m == d && m != 0 {
-				continue
+			if m != d {
+				best = better(best, tryDialect(sample, dialect{delimiter: d, mark: m}))
 			}
-			best = better(best, tryDialect(sample, dialect{delimiter: d, mark: m}))
 		}
 	}
 	if best.width == 0 {
@@ -109,14 +118,21 @@ func guessDialect(lines []line, declared site.File) (dialect, error) {
 	if best.width > MaxColumns {
 		return dialect{}, &FormatError{Msg: fmt.Sprintf("rows have %d columns, more than the %d that are read; export fewer", best.width, MaxColumns)}
 	}
-	if best.delimiter == ',' && best.width == 2 && !fixed && declared.Decimal != "." && pairIsDecimal(sample) {
-		best.dialect = dialect{delimiter: 0, mark: ',', width: 1}
+	if markSaid {
 		return best.dialect, nil
 	}
-	if best.delimiter == ',' && best.marked == 0 && declared.Decimal == "" && commasForAll(sample, best.width) {
+	return settleCommas(best, sample, delimiterSaid)
+}
+
+// settleCommas decides what the commas are in a table of whole numbers, and leaves the decimal mark open in a table
+// where no number has one.
+func settleCommas(best trial, sample []line, delimiterSaid bool) (dialect, error) {
+	switch {
+	case best.delimiter == ',' && best.width == 2 && !delimiterSaid && pairIsDecimal(sample):
+		return dialect{delimiter: 0, mark: ',', width: 1}, nil
+	case best.delimiter == ',' && best.marked == 0 && commasForAll(sample, best.width):
 		return dialect{}, &FormatError{Line: sample[len(sample)-1].number, Msg: "commas both separate the columns and mark the decimals; export again with semicolons or tabs between columns, or with decimal points"}
-	}
-	if best.marked == 0 && declared.Decimal == "" {
+	case best.marked == 0:
 		best.mark = 0
 	}
 	return best.dialect, nil
