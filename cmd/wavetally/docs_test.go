@@ -1,6 +1,7 @@
 package main
 
 import (
+	"io/fs"
 	"os"
 	"path/filepath"
 	"reflect"
@@ -57,6 +58,34 @@ func TestPathsInTheDocumentsExist(t *testing.T) {
 			if _, err := os.Stat("../../" + m[1]); err != nil {
 				t.Errorf("%s names %s, which is not there", doc, m[1])
 			}
+		}
+	}
+}
+
+// Every test that DEVELOPERS.md names is there.
+func TestTestsInTheDocumentsExist(t *testing.T) {
+	text, err := os.ReadFile("../../DEVELOPERS.md")
+	if err != nil {
+		t.Fatal(err)
+	}
+	all := map[string]bool{}
+	declared := regexp.MustCompile(`(?m)^func (Test\w+|Fuzz\w+)\(`)
+	err = filepath.WalkDir("../..", func(path string, d fs.DirEntry, err error) error {
+		if err != nil || d.IsDir() || !strings.HasSuffix(path, "_test.go") {
+			return err
+		}
+		code, err := os.ReadFile(path)
+		for _, m := range declared.FindAllStringSubmatch(string(code), -1) {
+			all[m[1]] = true
+		}
+		return err
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, m := range regexp.MustCompile(`\b(Test|Fuzz)[A-Z]\w+`).FindAllString(string(text), -1) {
+		if !all[m] {
+			t.Errorf("DEVELOPERS.md names %s, which is not there", m)
 		}
 	}
 }
