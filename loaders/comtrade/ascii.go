@@ -2,6 +2,7 @@ package comtrade
 
 import (
 	"bytes"
+	"fmt"
 	"io"
 	"math"
 
@@ -11,6 +12,12 @@ import (
 
 // maxLine bounds a line of an ASCII file; 4096 analog and 65 536 status channels take less.
 const maxLine = 1 << 20
+
+// Bounds of what is read as a raw value and as a time stamp.
+const (
+	largestRaw   = 1e100
+	largestStamp = 1e18
+)
 
 // An asciiReader reads records that are lines of text: number, stamp, analog values, status bits.
 type asciiReader struct {
@@ -116,7 +123,7 @@ func (r *asciiReader) record(b *batch, line []byte) error {
 	if number >= 0 && number < 1<<53 {
 		b.numbers[row] = int64(number)
 	}
-	if stamp != 999999 || r.code != 999999 { // the 1991 edition's missing stamp
+	if missing := stamp == 999999 && r.code == 999999; !missing && math.Abs(stamp) < largestStamp { // 1991's missing stamp
 		b.stamps[row] = stamp
 	}
 	at := 2
@@ -165,6 +172,8 @@ func (r *asciiReader) value(c *cellReader, ch *channel, b *batch, i int) float64
 		b.odd.unreadable[i].add(r.line, string(c.cell[:min(len(c.cell), 24)]))
 	case x == r.code || x == ch.missing:
 		b.odd.missing[i].add(r.line, "")
+	case math.Abs(x) > largestRaw:
+		b.odd.unreadable[i].add(r.line, fmt.Sprint(x))
 	default:
 		return ch.gain*x + ch.off
 	}

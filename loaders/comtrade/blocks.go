@@ -121,7 +121,7 @@ func (r *run) take() bool {
 	}
 	b := r.batch
 	r.before = r.rows
-	if r.begun {
+	if r.missing = 0; r.begun {
 		r.missing = r.lost(0, r.number, r.stamp)
 	}
 	for from := 0; from < b.rows; {
@@ -160,9 +160,14 @@ func (r *run) follow(from int) int {
 	if room := r.sections[r.section].last - r.position; room < int64(to-from-1) {
 		to = from + 1 + int(room)
 	}
-	numbers := b.numbers[:to]
 	r.missing = 0
 	start := r.position - int64(from)
+	if b.steady {
+		r.streak += to - from
+		r.position = start + int64(to-1)
+		return to
+	}
+	numbers := b.numbers[:to]
 	for i := from + 1; i < len(numbers); i++ {
 		r.streak++
 		if numbers[i] == numbers[i-1]+1 {

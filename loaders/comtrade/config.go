@@ -175,7 +175,7 @@ func (r *configReader) names() error {
 	}
 	r.station = f[0]
 	if n := len(f); n > 1 {
-		r.station, r.device = strings.Join(f[:n-1], ","), f[n-1]
+		r.station, r.device = strings.Join(f[:n-1], ", "), f[n-1]
 	}
 	return nil
 }
@@ -239,7 +239,7 @@ func (r *configReader) analog(f []string) (analog, error) {
 			if i > 7 { // limits and ratios can be done without
 				continue
 			}
-			return analog{}, r.wrong("%s of channel %q is %q, which is no number; copy the configuration again from the recorder", []string{"a", "b", "the skew"}[i-5], a.name, f[i])
+			return analog{}, r.wrong("%s of channel %q is %q, which is no number; copy the configuration again from the recorder", []string{"the factor a", "the offset b", "the skew"}[i-5], a.name, f[i])
 		}
 		*to = v
 	}
@@ -266,6 +266,9 @@ func (r *configReader) sampling() error {
 	f, err := r.line("the nominal frequency")
 	if err != nil {
 		return err
+	}
+	if len(f) >= 3 {
+		return r.wrong("the line has %d fields where the nominal frequency should stand; see that the second line tells the right number of channels", len(f))
 	}
 	if f[0] != "" {
 		if r.nominal, err = decimal(f[0]); err != nil {
@@ -297,7 +300,7 @@ func (r *configReader) addRate(f []string) error {
 	entry := rate{line: r.number()}
 	var err error
 	if f[0] != "" {
-		if entry.hz, err = decimal(f[0]); err != nil || entry.hz < 0 {
+		if entry.hz, err = decimal(f[0]); err != nil || entry.hz != 0 && !(entry.hz >= 1e-3 && entry.hz <= 1e9) {
 			return r.wrong("%q is no sampling rate; write samples per second, or 0 where time stamps tell", f[0])
 		}
 	}
@@ -354,9 +357,12 @@ func (r *configReader) data() error {
 	if f, err = r.line("the time multiplier"); err != nil || f[0] == "" {
 		return nil // the 1991 edition has none
 	}
-	if m, err := decimal(f[0]); err == nil && m > 0 {
-		r.timeMult = m
+	m, err := decimal(f[0])
+	if err != nil || !(m >= 1e-9 && m <= 1e9) {
+		r.note("time-multiplier", "%s:%d: %q is no factor of time stamps; they are taken to be in µs.", r.file, r.number(), f[0])
+		return nil
 	}
+	r.timeMult = m
 	return nil
 }
 

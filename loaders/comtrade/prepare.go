@@ -47,8 +47,7 @@ func (s *source) prepare() error {
 		return err
 	}
 	s.checkSkew()
-	s.compareLength()
-	return nil
+	return s.compareLength()
 }
 
 // chooseForm settles the form of the data: the data themselves count more than what is said about them.
@@ -137,6 +136,9 @@ func counts(head []byte, length int) bool {
 	return true
 }
 
+// largest bounds factors, so that no raw value becomes infinite by them.
+const largest = 1e200
+
 // chooseChannels makes channels of the analog channels of a voltage, a current or an unknown unit.
 func (s *source) chooseChannels() error {
 	c := s.config
@@ -167,6 +169,9 @@ func (s *source) chooseChannels() error {
 			}
 		}
 		ch.gain, ch.off = a.a*factor, a.b*factor
+		if !(math.Abs(ch.gain) < largest && math.Abs(ch.off) < largest) {
+			return &wave.ParseError{File: c.file, Line: a.line, Msg: fmt.Sprintf("the factors of channel %q (a = %g, b = %g, ratio %g/%g) are none of a measurement; copy the configuration again from the recorder", a.name, a.a, a.b, a.primary, a.secondary)}
+		}
 		ch.Skew = a.skew * 1e-6
 		s.setRange(&ch, a)
 		s.channels = append(s.channels, ch)
@@ -325,6 +330,9 @@ func (s *source) plan() error {
 		s.header.Rate = s.stamps.runs[0].rate
 		return nil
 	default:
+		if declared > 0 {
+			s.note("rate-ignored", "", "%s has %d sampling rates; the %g Hz of the site sheet are not used.", c.file, len(c.rates), declared)
+		}
 		s.sections = sectionsOf(c.rates)
 	}
 	s.header.Rate = s.sections[0].rate
@@ -364,16 +372,20 @@ func (s *source) checkSkew() {
 }
 
 // compareLength compares the length of the data with what is announced, where the file's size tells it.
-func (s *source) compareLength() {
+func (s *source) compareLength() error {
 	size := s.data.bytes()
-	if s.form == ASCII || size < 0 {
-		return
+	switch {
+	case size >= 0 && size < int64(max(1, s.record)):
+		return s.noRecord()
+	case s.form == ASCII || size < 0:
+		return nil
 	}
 	announced, there := s.header.Samples, size/int64(s.record)
 	s.header.Samples = there
 	if text := lengthNote(s.config.file, s.data.name(), announced, there, size%int64(s.record)); text != "" {
 		s.note(lengthCode(announced, there, size%int64(s.record)), "", "%s", text)
 	}
+	return nil
 }
 
 // lengthNote says how data of a number of records, and some bytes of another, differ from what is announced; it is

@@ -28,46 +28,49 @@ const (
 
 // findStretches reads all stamps.
 func (s *source) findStretches() error {
-	err := s.timeStretches()
+	p, err := s.pace()
 	// A fraction of nine digits should say that stamps count ns, but recorders write it that count µs.
-	if len(s.stamps.runs) > 0 && s.stamps.runs[0].rate > fastest && s.stamps.unit < s.config.timeMult*1e-7 {
+	if err == nil && p.runs[0].rate > fastest && s.stamps.unit < s.config.timeMult*1e-7 {
+		s.note("stamp-unit-assumed", "", "Time stamps in ns, as the nine digits of the times say, would give %.4g samples a second; they are read as µs.", p.runs[0].rate)
 		s.stamps.unit *= 1000
 		s.stamps.wraps *= 1000
-		s.note("stamp-unit-assumed", "", "Time stamps in ns, as the nine digits of the times say, would give %.4g samples a second; they are read as µs.", s.stamps.runs[0].rate)
-		err = s.timeStretches()
+		p, err = s.pace()
 	}
-	return err
-}
-
-func (s *source) timeStretches() error {
-	p := &pacer{scale: s.stamps}
-	r, closer, err := s.records()
 	if err != nil {
 		return err
-	}
-	defer closer.Close()
-	b := newBatch(len(s.channels), wave.BlockLen)
-	for {
-		err := r.next(b)
-		if err != nil && err != io.EOF && !cut(err) {
-			return err
-		}
-		if err == nil {
-			p.add(b.stamps[:b.rows])
-		}
-		if err := p.pace(err != nil); err != nil {
-			return s.stampError(err)
-		}
-		if err != nil {
-			break
-		}
-	}
-	if p.total == 0 {
-		return s.noRecord()
 	}
 	s.stamps.runs = p.runs
 	s.notePace(p)
 	return nil
+}
+
+// pace cuts the recording's stamps into stretches.
+func (s *source) pace() (*pacer, error) {
+	p := &pacer{scale: s.stamps}
+	r, closer, err := s.records()
+	if err != nil {
+		return nil, err
+	}
+	defer closer.Close()
+	for b := newBatch(len(s.channels), s.blockLen()); ; {
+		end := r.next(b)
+		if end != nil && end != io.EOF && !cut(end) {
+			return nil, wrap(s.data.name(), end)
+		}
+		if end == nil {
+			p.add(b.stamps[:b.rows])
+		}
+		if err := p.pace(end != nil); err != nil {
+			return nil, s.stampError(err)
+		}
+		if end != nil {
+			break
+		}
+	}
+	if p.total == 0 {
+		return nil, s.noRecord()
+	}
+	return p, nil
 }
 
 func (s *source) stampError(err error) error {
@@ -159,8 +162,11 @@ func (p *pacer) pace(last bool) error {
 // begin finds the main rhythm.
 func (p *pacer) begin() error {
 	fit, err := timebase.From(p.points(0, len(p.pending)), 0)
-	if err != nil {
-		return err
+	if err != nil { // too many changes; the first stretch has a rhythm of its own
+		var ok bool
+		if fit, ok = p.local(0); !ok {
+			return err
+		}
 	}
 	p.fits = append(p.fits, fit)
 	start := p.pending[0]
@@ -199,32 +205,50 @@ func (p *pacer) rhythm(i int) timebase.Fit {
 	if len(p.runs) == 0 {
 		before = p.fits[0]
 	}
-	end := i + 1
-	for ; end < len(p.pending) && end-i < 64; end++ {
-		if !(p.pending[end] > p.pending[end-1]-p.scale.unit) {
-			break
-		}
-	}
-	if end-i < 4 {
+	step, ok := p.step(i)
+	if !ok {
 		return before
 	}
-	step := medianStep(p.pending[i:end])
 	for _, known := range append([]timebase.Fit{before}, p.fits...) {
 		if math.Abs(step-known.Interval) <= 0.02*known.Interval+p.scale.unit {
 			return known
 		}
 	}
-	tolerance := 0.5*step + p.scale.unit
-	for end = i + 1; end < len(p.pending) && math.Abs(p.pending[end]-p.pending[end-1]-step) <= tolerance; end++ {
-	}
-	fit, err := timebase.From(p.points(i, end), 0)
-	if err != nil {
+	fit, ok := p.local(i)
+	if !ok {
 		return before
 	}
 	if len(p.fits) < 64 {
 		p.fits = append(p.fits, fit)
 	}
 	return fit
+}
+
+// step is the usual step of the stamps from pending record i on. Fewer than four say nothing.
+func (p *pacer) step(i int) (float64, bool) {
+	end := i + 1
+	for end < len(p.pending) && end-i < 64 && p.pending[end] > p.pending[end-1]-p.scale.unit {
+		end++
+	}
+	if end-i < 4 {
+		return 0, false
+	}
+	return medianStep(p.pending[i:end]), true
+}
+
+// local fits the run of even steps that begins with pending record i.
+func (p *pacer) local(i int) (timebase.Fit, bool) {
+	step, ok := p.step(i)
+	if !ok {
+		return timebase.Fit{}, false
+	}
+	tolerance := 0.5*step + p.scale.unit
+	end := i + 1
+	for end < len(p.pending) && math.Abs(p.pending[end]-p.pending[end-1]-step) <= tolerance {
+		end++
+	}
+	fit, err := timebase.From(p.points(i, end), 0)
+	return fit, err == nil
 }
 
 func medianStep(stamps []float64) float64 {
