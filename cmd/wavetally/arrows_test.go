@@ -17,6 +17,7 @@ var arrows = []struct {
 	{"harmonics/synth", []string{"harmonics/wave"}},
 	{"harmonics/internal", nil},
 	{"harmonics/limits", []string{"harmonics", "harmonics/site", "harmonics/wave"}},
+	{"harmonics/plant", []string{"harmonics", "harmonics/site"}},
 	{"harmonics/fitness", []string{"harmonics", "harmonics/limits", "harmonics/site", "harmonics/wave"}},
 	{"harmonics", []string{"harmonics/wave", "harmonics/site", "harmonics/internal/*"}},
 	{"loaders", []string{"harmonics/wave", "harmonics/site", "loaders/*"}},

@@ -8,11 +8,16 @@ import (
 	"io"
 	"os"
 	"path/filepath"
+	"slices"
+	"strings"
 	"time"
+	"unicode"
+	"unicode/utf8"
 
 	"github.com/spf13/cobra"
 
 	"wavetally/harmonics"
+	"wavetally/harmonics/fitness"
 	"wavetally/harmonics/site"
 	"wavetally/harmonics/wave"
 	"wavetally/loaders"
@@ -57,6 +62,8 @@ func (f openFlags) open(files []string, sheet site.Sheet) (*recording, error) {
 	if err != nil {
 		return nil, err
 	}
+	// A folder may hold a workbook that this program wrote; only one that is named is looked into.
+	paths = slices.DeleteFunc(paths, func(p string) bool { return filepath.Base(p) == "survey.xlsx" && !slices.Contains(files, p) })
 	zone, err := time.LoadLocation(sheet.Site.Timezone)
 	if err != nil {
 		return nil, err
@@ -98,6 +105,24 @@ func (r *recording) named(err error) error {
 		}
 	}
 	return err
+}
+
+// timeBase says that the recording's times contradict the mains, or nil.
+func (r *recording) timeBase() error {
+	d, wrong := fitness.TimeBase(r.Header(), r.look)
+	if !wrong {
+		return nil
+	}
+	err := errors.New(lowerFirst(strings.TrimSuffix(d.Text, ".")) + ": " + strings.Join(d.Proposal, ", "))
+	if files := r.Header().Files; len(files) > 0 {
+		return fmt.Errorf("%s: %w", files[0].Name, err)
+	}
+	return err
+}
+
+func lowerFirst(s string) string {
+	r, n := utf8.DecodeRuneInString(s)
+	return string(unicode.ToLower(r)) + s[n:]
 }
 
 // hashes returns the SHA-256 of each file of the recording, in hex, by path.

@@ -44,9 +44,12 @@ func (a *app) peek(ctx context.Context, files []string, f openFlags) error {
 	if err != nil {
 		return err
 	}
-	tell, end := a.progress("looking")
-	sum, err := harmonics.Measure(ctx, rec, rec.sheet, harmonics.Options{Progress: tell})
-	end()
+	var sum *harmonics.Summary
+	if err = rec.timeBase(); err == nil {
+		tell, end := a.progress("looking")
+		sum, err = harmonics.Measure(ctx, rec, rec.sheet, harmonics.Options{Progress: tell})
+		end()
+	}
 	if ctx.Err() != nil {
 		return ctx.Err()
 	}

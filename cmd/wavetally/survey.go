@@ -171,6 +171,9 @@ func loadRules(sheet *site.Sheet, dir string) ([]*limits.RuleSet, error) {
 
 // measure measures the recording and, beside it, takes the files' hashes.
 func (a *app) measure(ctx context.Context, rec *recording) (*harmonics.Summary, map[string]string, error) {
+	if err := rec.timeBase(); err != nil {
+		return nil, nil, err
+	}
 	tell, end := a.progress("measuring")
 	defer end()
 	type result struct {
