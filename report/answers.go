@@ -261,9 +261,12 @@ func distortion(s *Survey, g group) string {
 	}
 	top := Harmonic{Pct: NaN}
 	for _, h := range worst.Harmonics {
-		if h.Order > 1 && h.Pct.Known() && !(h.Pct <= top.Pct) {
+		if h.Order > 1 && h.AboveNoise && h.Pct.Known() && !(h.Pct <= top.Pct) {
 			top = h
 		}
+	}
+	if !top.Pct.Known() {
+		return fmt.Sprintf("THD is %s %% of the fundamental on %s, of which no order stands above the noise", Sig(float64(worst.THD.Mean)), worst.Name)
 	}
 	return fmt.Sprintf("THD is %s %% of the fundamental on %s, the largest order is %d with %s %% (%s)",
 		Sig(float64(worst.THD.Mean)), worst.Name, top.Order, Sig(float64(top.Pct)), Quantity(float64(top.RMS), worst.Unit))

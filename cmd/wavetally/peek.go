@@ -63,7 +63,10 @@ func (a *app) peek(ctx context.Context, files []string, f openFlags) error {
 	p.list("The files", noteTexts(rec.notes()))
 	p.list("Taken from the recording", rec.sheet.Guessed)
 	verdict := ""
-	if err != nil {
+	if d, wrong := fitness.TimeBase(rec.Header(), rec.look); wrong {
+		p.list("Doubts", doubtTexts([]fitness.Doubt{d}))
+		verdict = "no: the times must be corrected first"
+	} else if err != nil {
 		verdict = "no: " + err.Error()
 	} else {
 		doubts := fitness.Assess(rec.sheet, rec.Header(), rec.notes(), sum)
