@@ -6,6 +6,7 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"strings"
 	"testing"
 
 	"wavetally/loaders/csv"
@@ -53,6 +54,22 @@ func BenchmarkBlocks(b *testing.B) {
 		}
 	}
 	b.ReportMetric(float64(rows)*8*float64(b.N)/b.Elapsed().Seconds()/1e6, "Msamples/s")
+}
+
+// BenchmarkOpenSnapshot opens a recorder's snapshot of a few cycles, of which a session may have thousands.
+func BenchmarkOpenSnapshot(b *testing.B) {
+	w := plain
+	w.row = func(r int, s string) string { return drop(s, r >= 640) }
+	path := filepath.Join(b.TempDir(), "snapshot.csv")
+	if err := os.WriteFile(path, []byte(strings.TrimRight(string(w.text()), "\n")+"\n"), 0o600); err != nil {
+		b.Fatal(err)
+	}
+	b.ReportAllocs()
+	for b.Loop() {
+		if _, err := csv.Open(path, input.Options{}); err != nil {
+			b.Fatal(err)
+		}
+	}
 }
 
 // BenchmarkOpen understands a table and finds its rate.

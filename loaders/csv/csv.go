@@ -116,7 +116,7 @@ func (s *source) readHead() (head []byte, whole bool, err error) {
 		return nil, false, &wave.ParseError{File: s.name, Msg: err.Error()}
 	}
 	decoded := s.layout.Encoding.Reader(io.MultiReader(bytes.NewReader(raw), f))
-	head = make([]byte, headBytes)
+	head = make([]byte, s.headSize())
 	n, err = io.ReadFull(decoded, head)
 	if !endOfText(err) {
 		return nil, false, s.readError(err)
@@ -125,6 +125,14 @@ func (s *source) readHead() (head []byte, whole bool, err error) {
 		return nil, false, &wave.NotThisFormatError{File: s.name, Format: s.format, Msg: "it holds binary data"}
 	}
 	return head[:n], err != nil, nil
+}
+
+// headSize is the length of the head to read: no more than a small file can fill, of which a session may have many.
+func (s *source) headSize() int64 {
+	if s.size < 0 {
+		return headBytes
+	}
+	return min(headBytes, 4*s.size+16) // a byte becomes at most three by decoding
 }
 
 // endOfText reports whether a read of the head went well, or ended where the file does.

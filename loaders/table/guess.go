@@ -26,7 +26,7 @@ const MaxColumns = 8192
 
 const (
 	headLines   = 4000 // that the layout is guessed from
-	sampleLines = 300  // of them, that the delimiter is guessed from
+	sampleLines = 120  // of them, that the delimiter is guessed from
 )
 
 // Guess finds the layout of the table that head, decoded text, starts with. When whole is false the text goes on
