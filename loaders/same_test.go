@@ -102,22 +102,24 @@ func forms() []form {
 		}},
 		{"one file a channel, in a zip", 1e-6, func(t *testing.T, dir string) {
 			v, i := rowsOf(t)
-			a, b := "time (s),V1 (V)\n", "time (s),I1 (A)\n"
+			var a, b strings.Builder
+			fmt.Fprintln(&a, "time (s),V1 (V)")
+			fmt.Fprintln(&b, "time (s),I1 (A)")
 			for n := range v {
-				a += fmt.Sprintf("%.7f,%.4f\n", float64(n)/6400, v[n])
-				b += fmt.Sprintf("%.7f,%.4f\n", float64(n)/6400, i[n])
+				fmt.Fprintf(&a, "%.7f,%.4f\n", float64(n)/6400, v[n])
+				fmt.Fprintf(&b, "%.7f,%.4f\n", float64(n)/6400, i[n])
 			}
-			save(t, filepath.Join(dir, "a.zip"), zipped(t, map[string]string{"volts.csv": a, "amps.csv": b}))
+			save(t, filepath.Join(dir, "a.zip"), zipped(t, map[string]string{"volts.csv": a.String(), "amps.csv": b.String()}))
 		}},
 		{"three files one after the other", 1e-6, func(t *testing.T, dir string) {
 			v, i := rowsOf(t)
 			for part, to := range []int{7000, 7001, len(v)} {
 				from := []int{0, 7000, 7001}[part]
-				text := "time (s),V1 (V),I1 (A)\n"
+				text := []byte("time (s),V1 (V),I1 (A)\n")
 				for n := from; n < to || n < from+5; n++ {
-					text += plain(n, v[n], i[n])
+					text = append(text, plain(n, v[n], i[n])...)
 				}
-				save(t, filepath.Join(dir, fmt.Sprintf("part%d.csv", 9+part)), []byte(text))
+				save(t, filepath.Join(dir, fmt.Sprintf("part%d.csv", 9+part)), text)
 			}
 		}},
 		{"XLSX", 1e-9, func(t *testing.T, dir string) {
