@@ -179,6 +179,7 @@ func TestPathsThatCannotBeRead(t *testing.T) {
 		t.Fatal(err)
 	}
 	for path, want := range map[string]string{
+		os.DevNull:                     os.DevNull + ": it is a pipe or a device, which cannot be read twice; write the recording to a file",
 		loop:                           loop + ": it cannot be opened: too many levels of symbolic links",
 		sub:                            sub + ": it is a folder; name it alone, or the files in it",
 		filepath.Join(dir, "none.csv"): filepath.Join(dir, "none.csv") + ": there is no such file; check the name and the folder",

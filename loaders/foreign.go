@@ -3,8 +3,6 @@ package loaders
 import (
 	"bytes"
 	"io"
-	"os"
-	"path/filepath"
 
 	"wavetally/harmonics/wave"
 )
@@ -31,9 +29,9 @@ var foreign = []struct{ mark, what string }{
 	{"{\"", "it is a JSON file; export the waveforms as COMTRADE, WAV, CSV or XLSX"},
 }
 
-// refuseForeign recognises files that are something else altogether, to say so in plain words.
-func refuseForeign(path string) error {
-	f, err := os.Open(path)
+// foreign recognises a file that is something else altogether, to say so in plain words.
+func (it item) foreign() error {
+	f, err := it.opt.Open(it.path)
 	if err != nil {
 		return nil // reported by whoever opens it next
 	}
@@ -42,7 +40,7 @@ func refuseForeign(path string) error {
 	n, _ := io.ReadFull(f, head[:])
 	for _, k := range foreign {
 		if bytes.HasPrefix(head[:n], []byte(k.mark)) {
-			return &wave.NotThisFormatError{File: filepath.Base(path), Format: "a recording that can be read", Msg: k.what}
+			return &wave.NotThisFormatError{File: it.name, Format: "a recording that can be read", Msg: k.what}
 		}
 	}
 	return nil

@@ -53,19 +53,58 @@ func Open(paths []string, opt Options) (wave.Source, error) {
 		}
 		items = append(items, found...)
 	}
-	items = withoutCompanions(items)
-	var parts []wave.Source
-	for _, it := range items {
-		src, err := it.open()
-		if err != nil {
+	parts, notes, err := openAll(withoutCompanions(items))
+	if err != nil {
+		return nil, err
+	}
+	src := parts[0]
+	if len(parts) > 1 {
+		if src, err = together(parts); err != nil {
 			return nil, err
 		}
-		parts = append(parts, src)
 	}
-	if len(parts) == 1 {
-		return parts[0], nil
+	if len(notes) > 0 {
+		src = noted{src, notes}
 	}
-	return together(parts)
+	return src, nil
+}
+
+// openAll opens each item. Among several, one that is no recording at all, such as a text that explains the others, is
+// left out with a note.
+func openAll(items []item) (parts []wave.Source, notes []wave.Note, err error) {
+	var refused error
+	for _, it := range items {
+		src, err := it.open()
+		var other *wave.NotThisFormatError
+		switch {
+		case errors.As(err, &other):
+			if refused == nil {
+				refused = err
+			}
+			notes = append(notes, wave.Note{Code: "file-skipped", Text: fmt.Sprintf("%s is left out: %s.", it.name, other.Msg)})
+		case err != nil:
+			return nil, nil, err
+		default:
+			parts = append(parts, src)
+		}
+	}
+	if len(parts) == 0 {
+		return nil, nil, refused
+	}
+	return parts, notes, nil
+}
+
+// noted is a recording with more to say about its files.
+type noted struct {
+	wave.Source
+	notes []wave.Note
+}
+
+// Header adds the notes.
+func (n noted) Header() wave.Header {
+	h := n.Source.Header()
+	h.Notes = append(append([]wave.Note(nil), n.notes...), h.Notes...)
+	return h
 }
 
 // An item is one file to be opened, on disk or in an archive.
@@ -79,9 +118,6 @@ type item struct {
 // itemsIn lists what a path on disk holds: itself, what it unpacks to, or the recordings in it.
 func itemsIn(path string, opt Options) ([]item, error) {
 	if err := readable(path); err != nil {
-		return nil, err
-	}
-	if err := refuseForeign(path); err != nil {
 		return nil, err
 	}
 	name := filepath.Base(path)
@@ -147,6 +183,9 @@ func withoutCompanions(items []item) []item {
 // open opens an item with the first format that knows it.
 func (it item) open() (wave.Source, error) {
 	if err := it.unpacks(); err != nil {
+		return nil, err
+	}
+	if err := it.foreign(); err != nil {
 		return nil, err
 	}
 	var other *wave.NotThisFormatError
@@ -248,13 +287,17 @@ func (p packed) Blocks() iter.Seq2[wave.Block, error] {
 
 // readable says in plain words why a path cannot be opened.
 func readable(path string) error {
-	f, err := input.Options{}.Open(path)
-	if err == nil {
-		defer f.Close()
-		if info, err := f.Stat(); err == nil && info.IsDir() {
-			return fmt.Errorf("%s: it is a folder; name it alone, or the files in it", path)
+	info, err := os.Stat(path) // before opening: opening a pipe would wait for its other end
+	switch {
+	case err == nil && info.IsDir():
+		return fmt.Errorf("%s: it is a folder; name it alone, or the files in it", path)
+	case err == nil && !info.Mode().IsRegular():
+		return fmt.Errorf("%s: it is a pipe or a device, which cannot be read twice; write the recording to a file", path)
+	case err == nil:
+		var f fs.File
+		if f, err = os.Open(path); err == nil {
+			return f.Close()
 		}
-		return nil
 	}
 	switch {
 	case errors.Is(err, fs.ErrNotExist):

@@ -11,8 +11,10 @@ import (
 
 const (
 	minChunk = 64 << 10
-	maxChunk = 1 << 20
+	maxChunk = 512 << 10
 	maxLine  = 1 << 20 // bytes in one line; longer ones are no rows
+
+	maxWorkers = 8 // more would cost memory and find nothing to do: reading and measuring are slower
 )
 
 // chunkSize aims at about one block's rows.
@@ -100,7 +102,7 @@ type feed struct {
 }
 
 func startFeed(k *cutter, p *plan) *feed {
-	workers := runtime.GOMAXPROCS(0)
+	workers := min(runtime.GOMAXPROCS(0), maxWorkers)
 	depth := workers + 2
 	f := &feed{ordered: make(chan *chunk, depth), free: make(chan *chunk, depth), stop: make(chan struct{})}
 	jobs := make(chan *chunk, depth)
