@@ -379,7 +379,7 @@ func TestCapacitorStress(t *testing.T) {
 func TestVoltageFactor(t *testing.T) {
 	v := spectrum(map[int]float64{1: 1, 5: .05, 7: .03, 11: .02, 13: .015})
 	closeTo(t, "HVF", VoltageFactor(v), 0.0261, 5e-5)
-	v[3], v[9], v[2], v[4] = 0.5, 0.5, 0.5, 0.5
+	v[3], v[9], v[2], v[8] = 0.5, 0.5, 0.5, 0.5
 	closeTo(t, "HVF with orders that do not count", VoltageFactor(v), 0.0261, 5e-5)
 }
 

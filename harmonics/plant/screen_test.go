@@ -152,6 +152,7 @@ func TestScreenTexts(t *testing.T) {
 	says("Parallel resonance, 50 kvar, transformer alone", "10.5 MVA", func(s *site.Sheet, _ *harmonics.Summary) {
 		s.Supply.ShortCircuitCurrent, s.Supply.ShortCircuitCurrentMin = 0, 0
 	})
+	says("Parallel resonance, 50 kvar, minimum fault level", "Too near to order 11, which is strong here", func(_ *site.Sheet, sum *harmonics.Summary) { sum.Channels[2].H(11).RMS = 3 })
 	says("HVF, harmonic voltage factor", "derate motors", func(_ *site.Sheet, sum *harmonics.Summary) { sum.Channels[1].H(5).RMS = 20 })
 	says("Capacitor current", "above the 135 %", func(_ *site.Sheet, sum *harmonics.Summary) { sum.Channels[1].H(13).RMS = 23 })
 	says("Lowest parallel resonance, maximum fault level", "63 amounts of kvar", func(s *site.Sheet, _ *harmonics.Summary) {
