@@ -83,6 +83,7 @@ func recordingOf(in Inputs) Recording {
 		Files:     filesOf(in),
 		Duration:  Number(sum.Duration),
 		Windows:   Windows(sum.Windows),
+		Coverage:  coverageOf(sum, in.Sheet.Site.Timezone),
 		Gaps:      []Gap{},
 		Frequency: MinMeanMax{Number(sum.Frequency.Mean), Number(sum.Frequency.Min), Number(sum.Frequency.Max)},
 		Events:    []Event{},

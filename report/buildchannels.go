@@ -21,7 +21,9 @@ func orNaN(v float64) Number {
 func channelsOf(sum *harmonics.Summary, supply site.Supply) []Channel {
 	out := []Channel{}
 	for i := range sum.Channels {
-		out = append(out, channelOf(&sum.Channels[i], sum, supply))
+		c := channelOf(&sum.Channels[i], sum, supply)
+		c.LoadBins = loadBinsOf(sum, i, supply)
+		out = append(out, c)
 	}
 	return out
 }
@@ -34,6 +36,7 @@ func channelOf(c *harmonics.ChannelSummary, sum *harmonics.Summary, supply site.
 		NoiseFloor:  Number(c.FloorPct),
 		THD:         statsOf(c.THDPct, c.THD3s, c.THD10m, 1),
 		KFactor:     NaN, FHL: NaN,
+		THCLevel:  levelStatsOf(c.THC3s, c.THC10m),
 		Harmonics: []Harmonic{}, Interharmonics: []Interharmonic{},
 	}
 	if c.Role.Voltage() {
@@ -48,6 +51,7 @@ func channelOf(c *harmonics.ChannelSummary, sum *harmonics.Summary, supply site.
 		out.Harmonics = append(out.Harmonics, Harmonic{
 			Order: h.Order, Frequency: Number(float64(h.Order) * sum.Frequency.Mean), RMS: Number(h.RMS), Pct: Number(h.Pct),
 			Angle: Number(h.Angle), AboveNoise: h.Above, Floor: Number(h.Floor), Stats: statsOf(h.Pct, h.Share3s, h.Share10m, 1),
+			Level: levelStatsOf(h.Level3s, h.Level10m),
 		})
 	}
 	for order, rms := range c.Inter {

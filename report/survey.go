@@ -90,6 +90,7 @@ type Recording struct {
 	Start     *time.Time `json:"start"`
 	Duration  Number     `json:"duration_s"`
 	Windows   Windows    `json:"windows"`
+	Coverage  Coverage   `json:"coverage"`
 	Gaps      []Gap      `json:"gaps"`
 	Frequency MinMeanMax `json:"frequency_hz"`
 	Events    []Event    `json:"events"`
@@ -149,10 +150,12 @@ type Channel struct {
 	Fundamental    Fundamental     `json:"fundamental"`
 	NoiseFloor     Number          `json:"noise_floor_pct"`
 	THD            Stats           `json:"thd_pct"`
-	TDD            *Stats          `json:"tdd_pct"` // nil without a declared demand current
+	TDD            *Stats          `json:"tdd_pct"`        // nil without a declared demand current
+	THCLevel       *LevelStats     `json:"harmonic_level"` // of the root of the sum of squares of orders 2 to 50
 	KFactor        Number          `json:"k_factor"`
 	FHL            Number          `json:"harmonic_loss_factor"`
 	Harmonics      []Harmonic      `json:"harmonics"`
+	LoadBins       []LoadBin       `json:"load_bins"` // phase currents only
 	Interharmonics []Interharmonic `json:"interharmonics"`
 }
 
@@ -172,6 +175,8 @@ type Harmonic struct {
 	AboveNoise bool   `json:"above_noise"`
 	Floor      Number `json:"noise_floor"` // rms, in the channel's unit
 	Stats      Stats  `json:"stats"`
+
+	Level *LevelStats `json:"level"` // in the channel's unit; nil where there is no interval
 }
 
 // An Interharmonic is the centred subgroup between OrderBelow and the next order.
