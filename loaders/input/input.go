@@ -57,7 +57,7 @@ func (o Options) Location() *time.Location {
 
 // DeclaredRate is the sampling rate that the user declared, in Hz: of the file table, else of the options; 0 if none.
 func (o Options) DeclaredRate() float64 {
-	if o.File.SamplingRate > 0 {
+	if o.File.SamplingRate != 0 {
 		return o.File.SamplingRate
 	}
 	return o.Rate
