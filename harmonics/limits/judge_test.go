@@ -603,6 +603,16 @@ func TestWithoutDemandCurrent(t *testing.T) {
 	}
 }
 
+// Without IL a short record still says what its amperes are.
+func TestWithoutDemandCurrentAndShort(t *testing.T) {
+	sheet := sheet4()
+	sheet.Supply.DemandCurrent = 0
+	f := find(t, load(t, "ieee-519-2022").Judge(sheet, only("I1", 5, 10, steady(20))), "I1", 5, week95)
+	if f.Result != NotAssessed || f.Level != 20 || f.N != 10 || !f.Indicative || !strings.HasSuffix(f.Why, "the value is the 95th percentile of its 10 valid 10 min values") {
+		t.Errorf("%s, %v A, n %d: %q", f.Result, f.Level, f.N, f.Why)
+	}
+}
+
 // Without Isc the strictest row is shown.
 func TestWithoutShortCircuitCurrent(t *testing.T) {
 	sheet := sheet4()
@@ -751,5 +761,16 @@ func TestEmptySummaries(t *testing.T) {
 				t.Errorf("%s order %d: %s, %q from NaN", name, f.Order, f.Result, f.Why)
 			}
 		}
+	}
+}
+
+// A week of six channels.
+func BenchmarkJudge(b *testing.B) {
+	sum := record{[]site.Role{"V1", "V2", "V3", "I1", "I2", "I3"}, 1008, func(r site.Role, h, i int) float64 {
+		return fundamental(r) / float64(h) * (1 + 0.3*math.Sin(float64(i*h)))
+	}}.summary()
+	r := load(b, "ieee-519-2022")
+	for b.Loop() {
+		r.Judge(sheet4(), sum)
 	}
 }

@@ -100,7 +100,8 @@ func (v *verdict) tellStrictest() {
 	case v.quantity.basis == basisDemand && f.Limit > 0:
 		got := v.readingWithoutBasis()
 		if amps := got.value; amps > 0 {
-			f.Level, f.Indicative = amps, got.indicative != ""
+			v.reading = got
+			f.Level, f.N, f.Indicative = amps, got.n, got.indicative != ""
 			v.say("%s A would keep to the strictest row's %s %% for any demand current from %s A", sig(amps, 3), sig(f.Limit, 3), sig(100*amps/f.Limit, 3))
 		}
 	}
