@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"encoding/binary"
 	"errors"
+	"io"
 	"iter"
 	"math"
 	"os"
@@ -232,13 +233,33 @@ func FuzzReader(f *testing.F) {
 	f.Add(with(whole, 20, 3))
 	f.Add([]byte(strings.Repeat("RIFF\xff\xff\xff\xffWAVE", 3)))
 	f.Fuzz(func(t *testing.T, b []byte) {
-		src, err := open(t, b)
+		src, err := wav.Open("x.wav", input.Options{FS: stream{b, func(r io.Reader) io.Reader { return r }}})
 		if err != nil {
 			return
 		}
+		n, failed := int64(0), false
 		for b, err := range src.Blocks() {
-			if err == nil && b.Len() == 0 {
-				t.Error("an empty block")
+			if failed = err != nil; failed {
+				break
+			}
+			if b.Len() == 0 || b.At != float64(n)/b.Rate || len(b.Data) != len(src.Header().Channels) {
+				t.Errorf("a block of %d samples at %g s, after %d samples", b.Len(), b.At, n)
+			}
+			n += int64(b.Len())
+		}
+		if failed || len(src.Header().Channels) > 16 {
+			return
+		}
+		path := filepath.Join(t.TempDir(), "y.wav")
+		if err := wav.Write(path, src, -64); err != nil {
+			t.Fatal(err)
+		}
+		x, y := samples(t, src), samples(t, must(wav.Open(path, input.Options{})))
+		for c := range x {
+			for i, v := range x[c] {
+				if w := y[c][i]; v != w && !(math.IsNaN(v) && math.IsNaN(w)) {
+					t.Fatalf("channel %d, sample %d: %g became %g", c, i, v, w)
+				}
 			}
 		}
 	})
