@@ -41,6 +41,29 @@ func TestDeclarationsThatCannotBe(t *testing.T) {
 	}
 }
 
+// TestDeclaredRateBesideAUselessTime reads rows at the declared rate where their times stand still.
+func TestDeclaredRateBesideAUselessTime(t *testing.T) {
+	w := plain
+	w.time = func(int) string { return "0.0" }
+	for _, test := range []struct {
+		head string
+		rate float64
+		want string
+	}{
+		{"", signalRate, "time-column-unusable: The time column gives no sampling rate (the time stamps do not advance); the declared 3200 Hz is used, and lost rows do not show."},
+		{"Sample rate: 3.2 kHz\n", 0, "time-column-unusable: The time column gives no sampling rate (the time stamps do not advance); the 3200 Hz of line 1 are used, and lost rows do not show."},
+	} {
+		w.head = test.head + plain.head
+		src := open(t, string(w.text()), input.Options{Rate: test.rate})
+		if got := spans(t, src); !sameSpans(got, []span{{0, signalRows}}) || src.Header().Rate != signalRate {
+			t.Errorf("at %v Hz rows are in %v, want one run at %v", src.Header().Rate, got, signalRate)
+		}
+		if got := noteTexts(src); got != test.want {
+			t.Errorf("notes are %s, want %s", got, test.want)
+		}
+	}
+}
+
 func TestDelimitersInWords(t *testing.T) {
 	for word, delimiter := range map[string]string{"tab": "\t", "comma": ",", "semicolon": ";", "space": " "} {
 		w := plain

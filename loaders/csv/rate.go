@@ -23,6 +23,10 @@ func (s *source) findRate(rows []byte, whole bool) error {
 	if s.layout.Clock.Kind == table.NumberClock || s.layout.Clock.Kind == table.StampClock {
 		rate, err := s.rateFromStamps(points, whole)
 		switch {
+		case declared > 0 && err != nil:
+			s.header.Rate = declared
+			s.plan.hasTime = false
+			s.note("time-column-unusable", "", "The time column gives no sampling rate (%v); the declared %g Hz is used, and lost rows do not show.", err, declared)
 		case declared > 0:
 			s.header.Rate = declared
 			s.compare(rate, declared, "the site sheet states")
@@ -34,7 +38,7 @@ func (s *source) findRate(rows []byte, whole bool) error {
 		case stated > 0:
 			s.header.Rate = stated
 			s.plan.hasTime = false
-			s.note("time-column-unusable", "", "The time column gives no sampling rate (%v); the rate of %g Hz is taken from line %d.", err, stated, s.layout.Facts.RateLine)
+			s.note("time-column-unusable", "", "The time column gives no sampling rate (%v); the %g Hz of line %d are used, and lost rows do not show.", err, stated, s.layout.Facts.RateLine)
 		default:
 			return &wave.ParseError{File: s.name, Line: s.layout.Line, Err: err,
 				Msg: fmt.Sprintf("the time column gives no sampling rate: %v; state sampling_rate under [file] in the site sheet", err)}
