@@ -19,12 +19,18 @@ type book struct {
 	survey *report.Survey
 	sheets []*sheet
 	styles map[style]int
-	force  *sheet // limits in force
+	tables map[string]report.Table // the survey's, by key
+	force  *sheet                  // limits in force
 	err    error
 }
 
 func newBook(s *report.Survey) *book {
-	return &book{file: excelize.NewFile(), survey: s, styles: map[style]int{}}
+	b := &book{file: excelize.NewFile(), survey: s, styles: map[style]int{}, tables: map[string]report.Table{}}
+	for _, t := range append(report.Tables(s), report.FullTables(s)...) {
+		b.tables[t.Key] = t
+	}
+	b.keep(b.file.SetDefaultFont(font))
+	return b
 }
 
 func (b *book) keep(err error) {
@@ -35,9 +41,6 @@ func (b *book) keep(err error) {
 
 // id is the style's number in the workbook.
 func (b *book) id(s style) int {
-	if s == plain {
-		return 0
-	}
 	id, known := b.styles[s]
 	if !known {
 		var err error

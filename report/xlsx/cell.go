@@ -2,6 +2,7 @@ package xlsx
 
 import (
 	"math"
+	"strings"
 	"time"
 
 	"github.com/xuri/excelize/v2"
@@ -62,7 +63,8 @@ func moment(t time.Time) cell { return cell{value: serial(t), style: dateLook} }
 // serial is the moment as spreadsheets count it: days since the end of 1899, UTC.
 func serial(t time.Time) float64 {
 	const epoch = 25569 // days from there to 1970
-	return epoch + float64(t.Unix())/86400 + float64(t.Nanosecond())/86400e9
+	days := epoch + float64(t.Unix())/86400 + float64(t.Nanosecond())/86400e9
+	return math.Round(days*1e10) / 1e10 // the library cuts numbers off after 15 digits, which would turn 4:00:00 into 3:59:59
 }
 
 // at is a cell's address within its sheet, such as "C12".
@@ -73,6 +75,9 @@ func at(column, row int) string {
 	}
 	return name
 }
+
+// column1 is a column's letters.
+func column1(column int) string { return strings.TrimRight(at(column, 1), "1") }
 
 // fixed is the same with dollar signs, which keep a formula's address where it is when rows are sorted.
 func fixed(column, row int) string {

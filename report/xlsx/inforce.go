@@ -43,7 +43,7 @@ func (b *book) forceSheet(s *sheet, regimes []*regime, refs map[*limits.RuleSet]
 	s.title("Limits in force at the inputs of sheet Site")
 	s.note("Limit = the table's value × factor of the order × factor of the statistic. Nothing here is typed in: the tables and factors stand on sheet Limits.", noteWidth)
 	units := s.header([]column{{head: "Rule set"}, {head: "On"}, {head: "What"}, {head: "Order"}, {head: "Statistic"}, {head: "Row of the table", width: 16}, {head: "Table", unit: "%"},
-		{head: "× order", width: 9}, {head: "× statistic", width: 11}, {head: "Limit", unit: "%"}, {head: "Table's status"}})
+		{head: "× order", width: 10}, {head: "× statistic", width: 14}, {head: "Limit", unit: "%"}, {head: "Table's status"}})
 	s.freeze(units, 0, units-1)
 	out := map[forceKey]force{}
 	for _, r := range regimes {
@@ -76,8 +76,8 @@ func (s *sheet) force(r *regime, order int, st limits.Statistic, refs factorRefs
 		basis = r.tables[i-1].Basis
 	}
 	s.add(text(report.RuleTitle(r.set.Name)), text(r.kind), text(orderWord(r.kind, order, basis)), orderCell, text(report.ShortStatistic(st.String())),
-		result(e.row).live(e.rowFormula), number(e.pct, levelFormat).orEmpty().live(e.pctFormula), ofOrderCell, ofStatCell,
-		number(limit, levelFormat).orEmpty().live(fmt.Sprintf(`IF(ISNUMBER(%[1]s),%[1]s*%[2]s*%[3]s,"")`, at(forceTable, n), at(forceOfOrder, n), at(forceOfStat, n))),
+		result(e.row).live(e.rowFormula), number(e.pct, limitFormat).orEmpty().live(e.pctFormula), ofOrderCell, ofStatCell,
+		number(limit, limitFormat).orEmpty().live(fmt.Sprintf(`IF(ISNUMBER(%[1]s),%[1]s*%[2]s*%[3]s,"")`, at(forceTable, n), at(forceOfOrder, n), at(forceOfStat, n))),
 		text(e.status))
 	return force{regime: r, row: n, limit: limit, label: e.row}
 }
@@ -86,10 +86,10 @@ func (s *sheet) force(r *regime, order int, st limits.Statistic, refs factorRefs
 func (r *regime) ofOrder(order int, refs factorRefs) (float64, cell) {
 	for i, f := range r.set.Factors {
 		if f.Quantity == r.kind && f.Orders.Contains(order) {
-			return f.Factor, measured(f.Factor).live(refs.order[i])
+			return f.Factor, number(f.Factor, limitFormat).live(refs.order[i])
 		}
 	}
-	return 1, measured(1)
+	return 1, number(1, limitFormat)
 }
 
 // ofStatistic is the factor that the statistic brings.
@@ -104,7 +104,7 @@ func (r *regime) ofStatistic(order int, st limits.Statistic, refs factorRefs) (f
 		ref = refs.total[key]
 	}
 	if ref == "" {
-		return v, measured(v) // by a formula of the document, or none
+		return v, number(v, limitFormat) // by a formula of the document, or none
 	}
-	return v, measured(v).live(ref)
+	return v, number(v, limitFormat).live(ref)
 }

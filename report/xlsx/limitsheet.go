@@ -18,21 +18,21 @@ type factorRefs struct {
 func (b *book) limitSheet(s *sheet, regimes []*regime) map[*limits.RuleSet]factorRefs {
 	s.title("Limits")
 	s.note("Tables and factors as the rule sets have them, with their source. They may be changed: what is judged by them follows. Column \"Holds\" is 1 for the row and the table that the inputs on sheet Site choose.", noteWidth)
-	s.add(text("Isc / IL"), number(ratioOf(b.survey.Site.Supply), shareFormat).orEmpty().live(nameRatio),
-		text("Voltage").as(style{right: true}), number(systemVoltage(b.survey.Site.Supply), shareFormat).orEmpty().live(nameSystem), text("V"))
+	s.add(text("Isc / IL"), number(ratioOf(b.survey.Site.Supply), computedFormat).orEmpty().live(nameRatio),
+		text("Voltage").as(style{right: true}), number(systemVoltage(b.survey.Site.Supply), computedFormat).orEmpty().live(nameSystem), text("V"))
 	s.freeze(s.next()-1, 0, 0)
 	s.repeat = 0
-	s.width(colLabel, 30)
+	s.width(colLabel, 40)
 	for c := colLow; c <= colHolds; c++ {
 		s.width(c, 10)
 	}
 	last := lastColumn(regimes)
 	for c := colLimit; c < last; c++ {
-		s.width(c, 9)
+		s.width(c, 13)
 	}
 	s.width(last, 17)
 	s.width(last+1, 24)
-	s.width(last+2, 70)
+	s.width(last+2, 80)
 	out := map[*limits.RuleSet]factorRefs{}
 	for _, set := range b.survey.RuleSets {
 		s.gap()
@@ -143,7 +143,7 @@ func end(has bool, v float64) cell {
 	if !has {
 		return none
 	}
-	return measured(v)
+	return number(v, limitFormat)
 }
 
 func (s *sheet) head(t *placed, last int) {
@@ -187,7 +187,7 @@ func (s *sheet) limitRow(t *placed, r *regime, row limits.TableRow, last int) {
 	}
 	cells := []cell{text(row.Label), end(row.Span.HasLow, row.Span.Low), end(row.Span.HasHigh, row.Span.High), holds}
 	for _, c := range row.Cells {
-		cells = append(cells, measured(c.Pct).as(inputLook))
+		cells = append(cells, number(c.Pct, limitFormat).as(inputLook))
 	}
 	e := row.Evidence
 	if row.Formula != "" {
@@ -207,11 +207,11 @@ func (s *sheet) statistics(set *limits.RuleSet, refs *factorRefs, last int) {
 			judged = "no"
 			e.Source += "; not judged: " + st.Information
 		}
-		factor := measured(st.Factor).as(inputLook)
+		factor := number(st.Factor, limitFormat).as(inputLook)
 		if st.Formula != "" {
 			factor = text(st.Formula)
 		}
-		total := measured(st.TotalFactor).as(inputLook)
+		total := number(st.TotalFactor, limitFormat).as(inputLook)
 		if st.TotalFactor == 0 {
 			total = none
 		}
@@ -234,7 +234,7 @@ func (s *sheet) orderFactors(set *limits.RuleSet, refs *factorRefs, last int) {
 	s.add(text("Factors of single orders").as(boldLook))
 	s.add(withEvidenceHeads([]cell{text("Orders").as(headLook), text("On").as(headLook), cell{style: headLook}, cell{style: headLook}, text("Factor").as(headLook)}, last)...)
 	for _, f := range set.Factors {
-		n := s.add(evidence([]cell{text(f.Orders.Text), text(f.Quantity), none, none, measured(f.Factor).as(inputLook)}, f.Evidence, last)...)
+		n := s.add(evidence([]cell{text(f.Orders.Text), text(f.Quantity), none, none, number(f.Factor, limitFormat).as(inputLook)}, f.Evidence, last)...)
 		refs.order = append(refs.order, s.ref(colLimit, n))
 	}
 }
@@ -251,6 +251,6 @@ func (s *sheet) raisings(set *limits.RuleSet, last int) {
 		for i, o := range r.Orders {
 			words += pick(i > 0, ", ", "") + itoa(o)
 		}
-		s.add(evidence([]cell{text(words), measured(r.HeldTo), text("%"), none, measured(r.Factor)}, r.Evidence, last)...)
+		s.add(evidence([]cell{text(words), number(r.HeldTo, limitFormat), text("%"), none, number(r.Factor, limitFormat)}, r.Evidence, last)...)
 	}
 }

@@ -19,6 +19,7 @@ type sheet struct {
 	long  int                                     // rows that body writes
 
 	widths     map[int]float64 // set by hand
+	heights    map[int]float64 // of rows, in points; else as high as the letters
 	frozen     int             // rows
 	frozenCols int
 	repeat     int // header rows repeated on every printed page, up to this one
@@ -26,8 +27,11 @@ type sheet struct {
 	printed    int    // columns printed; 0 for all
 	filter     string // range with an automatic filter
 	conditions []condition
+	shades     []string // ranges shaded by their numbers
 	links      []link
-	portrait   bool
+	breaks     []int // rows that begin a page
+	charts     []placedChart
+	tight      bool // columns are alike, and long words run over to the right
 	stream     *excelize.StreamWriter
 }
 
@@ -35,6 +39,12 @@ type sheet struct {
 type condition struct {
 	where, formula string
 	look           int
+}
+
+// A placedChart is a native chart, with those drawn into the same frame, at a cell.
+type placedChart struct {
+	at    string
+	chart []*excelize.Chart
 }
 
 // A link leads to another sheet.
@@ -51,8 +61,8 @@ func (s *sheet) next() int { return len(s.rows) + 1 }
 
 func (s *sheet) gap() { s.add() }
 
-func (s *sheet) title(words string) { s.add(text(words).as(titleLook)) }
-func (s *sheet) part(words string)  { s.add(text(words).as(partLook)) }
+func (s *sheet) title(words string) { s.height(s.add(text(words).as(titleLook)), 21) }
+func (s *sheet) part(words string)  { s.height(s.add(text(words).as(partLook)), 17) }
 
 // note writes a sentence over several rows where it is long.
 func (s *sheet) note(words string, width int) {
@@ -67,14 +77,22 @@ type column struct {
 	width      float64 // 0: as wide as what it holds
 }
 
-// header writes a row of heads and a row of units, and freezes them.
-func (s *sheet) header(columns []column) (units int) {
+// header writes a row of heads and, where there are any, a row of units. It returns the last of the two.
+func (s *sheet) header(columns []column) int {
 	heads, below := make([]cell, len(columns)), make([]cell, len(columns))
+	units := false
 	for i, c := range columns {
 		heads[i], below[i] = text(c.head).as(headLook), text(c.unit).as(unitLook)
+		units = units || c.unit != ""
 		if c.width > 0 {
 			s.width(i+1, c.width)
 		}
+	}
+	if !units {
+		for i := range heads {
+			heads[i].style.line = true
+		}
+		return s.add(heads...)
 	}
 	s.add(heads...)
 	return s.add(below...)
@@ -114,37 +132,155 @@ func (s *sheet) columns() int {
 // open sets what the library wants to know before the first row, and resolves styles, which only one may do at a time.
 func (s *sheet) open() {
 	f, b := s.book.file, s.book
-	fit := true
-	b.keep(f.SetSheetProps(s.name, &excelize.SheetPropsOptions{FitToPage: &fit}))
-	s.page()
+	s.align()
+	s.indent()
+	s.setHeights()
 	for _, r := range s.rows {
 		for _, c := range r {
 			b.id(c.style)
 		}
 	}
 	if s.filter != "" {
-		b.keep(f.AutoFilter(s.name, s.filter, nil))
+		b.keep(f.AutoFilter(s.name, s.filter, nil)) // before the sheet's properties, which it clears
 	}
-	for _, c := range s.conditions {
-		b.keep(f.SetConditionalFormat(s.name, c.where, []excelize.ConditionalFormatOptions{{Type: "formula", Criteria: c.formula, Format: &c.look}}))
-	}
-	for _, l := range s.links {
-		b.keep(f.SetCellHyperLink(s.name, l.from, l.to, "Location"))
-	}
+	fit := true
+	b.keep(f.SetSheetProps(s.name, &excelize.SheetPropsOptions{FitToPage: &fit}))
+	s.page()
+	s.setWidths() // before charts, whose places are reckoned from them
+	s.decorate()
 	stream, err := f.NewStreamWriter(s.name)
 	b.keep(err)
 	if err != nil {
 		return
 	}
 	s.stream = stream
-	for i, w := range s.fit() {
-		b.keep(stream.SetColWidth(i+1, i+1, w))
-	}
 	if s.frozen > 0 {
 		corner := at(s.frozenCols+1, s.frozen+1)
 		b.keep(stream.SetPanes(&excelize.Panes{Freeze: true, XSplit: s.frozenCols, YSplit: s.frozen, TopLeftCell: corner,
-			ActivePane: map[bool]string{true: "bottomRight", false: "bottomLeft"}[s.frozenCols > 0]}))
+			ActivePane: pick(s.frozenCols > 0, "bottomRight", "bottomLeft")}))
 	}
+}
+
+// setWidths sets the columns' widths from the last to the first, since the library puts what is set later first; alike
+// ones at once, since it copies all for each call.
+func (s *sheet) setWidths() {
+	widths := s.fit()
+	for to := len(widths); to > 0; {
+		from := to
+		for from > 1 && widths[from-2] == widths[to-1] {
+			from--
+		}
+		first, last := column1(from), column1(to)
+		s.book.keep(s.book.file.SetColWidth(s.name, first, last, widths[to-1]))
+		to = from - 1
+	}
+}
+
+// decorate adds what stands beside the cells.
+func (s *sheet) decorate() {
+	f, b := s.book.file, s.book
+	for _, c := range s.conditions {
+		b.keep(f.SetConditionalFormat(s.name, c.where, []excelize.ConditionalFormatOptions{{Type: "formula", Criteria: c.formula, Format: &c.look}}))
+	}
+	for _, where := range s.shades {
+		b.keep(f.SetConditionalFormat(s.name, where, []excelize.ConditionalFormatOptions{{Type: "2_color_scale", Criteria: "=", MinType: "min", MaxType: "max", MinColor: "#FFFFFF", MaxColor: "#7FA8D1"}}))
+	}
+	for _, l := range s.links {
+		b.keep(f.SetCellHyperLink(s.name, l.from, l.to, "Location"))
+	}
+	for _, c := range s.charts {
+		b.keep(f.AddChart(s.name, c.at, c.chart[0], c.chart[1:]...))
+	}
+	for _, row := range s.breaks {
+		b.keep(f.InsertPageBreak(s.name, at(1, row)))
+	}
+}
+
+// indent gives words room to a number on their left.
+func (s *sheet) indent() {
+	for _, r := range s.rows {
+		for i := 1; i < len(r); i++ {
+			if _, words := r[i].value.(string); words && !r[i].style.right {
+				r[i].style.indent = true
+			}
+		}
+	}
+}
+
+// Heights of rows, in points.
+const (
+	rowHeight  = 15.0
+	lineHeight = 12.75
+)
+
+// setHeights makes rows with wrapped words high enough for them: not every program does so by itself.
+func (s *sheet) setHeights() {
+	widths := s.fit()
+	for i, r := range s.rows {
+		lines := 1
+		for c := range r {
+			if words, ok := r[c].value.(string); ok && r[c].style.wrap {
+				lines = max(lines, len(fold(words, r[c].lineLength(widths[c]))))
+			}
+		}
+		if lines > 1 {
+			s.height(i+1, float64(lines)*lineHeight+2.25)
+		}
+	}
+}
+
+// lineLength is how many letters of a wrapped cell go on a line.
+func (c cell) lineLength(width float64) int {
+	perDigit := 1.22 // letters are narrower than digits, on the whole
+	if c.style.bold {
+		perDigit = 1.08
+	}
+	return max(4, int((width-1.5)*perDigit))
+}
+
+func (s *sheet) height(row int, points float64) {
+	if s.heights == nil {
+		s.heights = map[int]float64{}
+	}
+	s.heights[row] = points
+}
+
+// align sets the heads of columns of numbers to the right, where their numbers stand.
+func (s *sheet) align() {
+	for i, r := range s.rows {
+		if !isHead(r) {
+			continue
+		}
+		below := i + 1
+		for below < len(s.rows) && isHead(s.rows[below]) {
+			below++
+		}
+		for c := range r {
+			if s.numbersUnder(below, c) {
+				r[c].style.right = true
+			}
+		}
+	}
+}
+
+func isHead(r []cell) bool { return len(r) > 0 && r[0].style.fill == headFill }
+
+// numbersUnder reports whether the first cell that holds anything in a column, from a row on, holds a number.
+func (s *sheet) numbersUnder(row, column int) bool {
+	for ; row < len(s.rows) && len(s.rows[row]) > 1; row++ {
+		if column >= len(s.rows[row]) {
+			continue
+		}
+		switch v := s.rows[row][column].value.(type) {
+		case float64:
+			return true
+		case string:
+			if v != "" {
+				return false
+			}
+		}
+	}
+	return row == len(s.rows) && s.body != nil && column > 1
 }
 
 // write lays the rows down.
@@ -153,13 +289,13 @@ func (s *sheet) write() error {
 	for i, cells := range s.rows {
 		row = row[:0]
 		for _, c := range cells {
-			if c.value == nil && c.formula == "" && c.style == plain {
+			if c.value == nil && c.formula == "" && c.style.bare() {
 				row = append(row, nil)
 				continue
 			}
 			row = append(row, excelize.Cell{StyleID: s.book.styles[c.style], Formula: c.formula, Value: c.value})
 		}
-		if err := s.stream.SetRow(at(1, i+1), row); err != nil {
+		if err := s.stream.SetRow(at(1, i+1), row, excelize.RowOpts{Height: s.heights[i+1]}); err != nil {
 			return err
 		}
 	}
@@ -183,11 +319,10 @@ func (s *sheet) fit() []float64 {
 		out[i] = narrowest
 	}
 	for _, r := range s.rows {
-		if len(r) == 1 {
-			continue
-		}
 		for i, c := range r {
-			out[i] = max(out[i], min(c.width(), widest))
+			if _, words := c.value.(string); len(r) > 1 && !(s.tight && words && i == len(r)-1) {
+				out[i] = max(out[i], min(c.width(), widest))
+			}
 		}
 	}
 	for i, w := range s.widths {
@@ -242,10 +377,7 @@ func numberWidth(v float64, format string) float64 {
 // page sets up printing: landscape, as wide as the paper, pages numbered.
 func (s *sheet) page() {
 	f, b := s.book.file, s.book
-	paper, wide, tall, turned := 9, 1, 0, "landscape"
-	if s.portrait {
-		turned = "portrait"
-	}
+	paper, wide, tall, turned := 9, 1, 0, "landscape" // 9 is A4; programs scale to the paper there is
 	b.keep(f.SetPageLayout(s.name, &excelize.PageLayoutOptions{Size: &paper, Orientation: &turned, FitToWidth: &wide, FitToHeight: &tall}))
 	edge, head := 0.5, 0.3
 	bottom := 0.7

@@ -69,7 +69,12 @@ func (w *siteBuilder) words(what, value string) {
 	if value == "" {
 		value, kind = undeclared, ""
 	}
-	w.add(text(what).as(topLook), text(value).as(wrapLook), none, text(kind).as(topLook))
+	w.add(text(what), text(value).as(wrapLook), none, text(kind))
+}
+
+// declaredNumber is a number as it was typed in, in a column of words and numbers.
+func declaredNumber(v float64) cell {
+	return cell{value: v, style: style{format: limitFormat, left: true, indent: true}}
 }
 
 // declared is a number that verdicts do not rest on; 0 is one that was not declared.
@@ -78,16 +83,17 @@ func (w *siteBuilder) declared(what string, v float64, unit, remark string) {
 		w.words(what, "")
 		return
 	}
-	w.add(text(what).as(topLook), measured(v), text(unit), text("declared"), none, text(remark).as(wrapLook))
+	w.add(text(what), declaredNumber(v), text(unit), text("declared"), none, text(remark).as(wrapLook))
 }
 
 // input is a number that verdicts rest on.
 func (w *siteBuilder) input(name, what string, v float64, unit, remark string) int {
-	c, surveyed := cell{style: style{format: shareFormat}}, text(undeclared)
+	c, surveyed := cell{style: style{format: limitFormat, left: true}}, text(undeclared)
 	if v > 0 {
-		c, surveyed = measured(v), measured(v)
+		c, surveyed = declaredNumber(v), declaredNumber(v)
 	}
-	r := w.add(text(what), c.as(inputLook), text(unit), text("input").as(boldLook), surveyed, text(remark).as(wrapLook))
+	c.style.fill, c.style.frame = inputLook.fill, true
+	r := w.add(text(what), c, text(unit), text("input").as(boldLook), surveyed, text(remark).as(wrapLook))
 	if name != "" {
 		w.book.name(name, w.ref(2, r))
 	}
@@ -124,10 +130,8 @@ func (w *siteBuilder) positive(r int, most float64, help string) {
 
 // computed is a number that follows from inputs.
 func (w *siteBuilder) computed(name, what string, v float64, formula, unit, remark string) int {
-	c := number(v, shareFormat)
-	if c.value == nil {
-		c.value = ""
-	}
+	c := number(v, computedFormat).orEmpty()
+	c.style.left, c.style.indent = true, true
 	r := w.add(text(what), c.live(formula), text(unit), text("computed"), none, text(remark).as(wrapLook))
 	if name != "" {
 		w.book.name(name, w.ref(2, r))

@@ -14,13 +14,20 @@ type style struct {
 	italic bool
 	wrap   bool
 	right  bool
-	top    bool // a wrapped cell's neighbours stand at its top
+	left   bool // numbers too
+	indent bool // room to the number on the left
 	fill   string
 	ink    string
 	size   float64
 	line   bool // beneath
 	frame  bool
 }
+
+// The font is one that every system has, or one of the same widths.
+const (
+	font     = "Arial"
+	fontSize = 10
+)
 
 const (
 	grey      = "595959"
@@ -31,14 +38,13 @@ const (
 
 var (
 	plain     = style{}
-	titleLook = style{bold: true, size: 16}
+	titleLook = style{bold: true, size: 15}
 	partLook  = style{bold: true, size: 12}
 	headLook  = style{bold: true, wrap: true, fill: headFill}
 	unitLook  = style{italic: true, ink: grey, fill: headFill, line: true}
 	noteLook  = style{ink: grey}
 	boldLook  = style{bold: true}
-	wrapLook  = style{wrap: true, top: true}
-	topLook   = style{top: true}
+	wrapLook  = style{wrap: true}
 	linkLook  = style{ink: linkInk}
 	dateLook  = style{format: "yyyy-mm-dd hh:mm:ss"}
 	inputLook = style{fill: inputFill, frame: true}
@@ -47,9 +53,9 @@ var (
 // Formats of numbers that formulas compute: as many decimals as show three or four significant digits. Formats know no
 // significant digits, but two thresholds.
 const (
-	shareFormat = "[>=99.95]0;[>=9.995]0.0;0.00"
-	levelFormat = "[>=99.95]0.0;[>=9.995]0.00;0.000"
-	wholeFormat = "0"
+	computedFormat = "[>=99.95]0.0;[>=9.995]0.00;0.000"
+	wholeFormat    = "0"
+	limitFormat    = "General" // limits are round numbers, but for those computed
 )
 
 // digits is how many significant digits a number that is not computed is shown with.
@@ -65,7 +71,10 @@ func formatFor(v float64) string {
 
 // decimals is the format with n decimals.
 func decimals(n int) string {
-	n = min(max(n, 0), 7)
+	n = max(n, 0)
+	if n > 7 {
+		return "0.00E+00"
+	}
 	if n == 0 {
 		return wholeFormat
 	}
@@ -85,11 +94,14 @@ func decimalsOf(text string) string {
 	return decimals(n)
 }
 
+// bare reports whether an empty cell of the style shows nothing.
+func (s style) bare() bool { return s.fill == "" && !s.line && !s.frame }
+
 // excel is the style in the library's terms.
 func (s style) excel() *excelize.Style {
-	out := &excelize.Style{Font: &excelize.Font{Bold: s.bold, Italic: s.italic, Color: s.ink, Size: s.size, Family: "Calibri"}}
+	out := &excelize.Style{Font: &excelize.Font{Bold: s.bold, Italic: s.italic, Color: s.ink, Size: s.size, Family: font}}
 	if out.Font.Size == 0 {
-		out.Font.Size = 11
+		out.Font.Size = fontSize
 	}
 	if s.format != "" {
 		out.CustomNumFmt = &s.format
@@ -97,12 +109,14 @@ func (s style) excel() *excelize.Style {
 	if s.fill != "" {
 		out.Fill = excelize.Fill{Type: "pattern", Pattern: 1, Color: []string{s.fill}}
 	}
-	out.Alignment = &excelize.Alignment{WrapText: s.wrap}
-	if s.top || s.wrap {
-		out.Alignment.Vertical = "top"
-	}
-	if s.right {
+	out.Alignment = &excelize.Alignment{WrapText: s.wrap, Vertical: "top"}
+	switch {
+	case s.right:
 		out.Alignment.Horizontal = "right"
+	case s.indent:
+		out.Alignment.Horizontal, out.Alignment.Indent = "left", 1
+	case s.left:
+		out.Alignment.Horizontal = "left"
 	}
 	if s.line {
 		out.Border = []excelize.Border{{Type: "bottom", Color: "7F7F7F", Style: 1}}

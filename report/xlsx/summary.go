@@ -3,15 +3,13 @@ package xlsx
 import (
 	"fmt"
 
-	"github.com/xuri/excelize/v2"
-
 	"wavetally/harmonics/limits"
 	"wavetally/report"
 )
 
 var results = []string{limits.Exceeds, limits.Undecided, limits.NotAssessed, limits.Within}
 
-const summaryWidth = 118
+const summaryWidth = 140
 
 // summarySheet answers first: the survey's sentences, then counts and highest shares, which follow the inputs.
 func (b *book) summarySheet(s *sheet, verdicts []verdictRange) {
@@ -160,8 +158,8 @@ func (s *sheet) ranked(v verdictRange, l line, k int) {
 	key := v.column(verdictKeyed)
 	s.add(result(clean(report.RuleTitle(l.RuleSet))).live(find(verdictSet)), result(string(l.Channel)).live(find(verdictChannel)),
 		result(report.QuantityName(l.Quantity, l.Order)).live(find(verdictWhat)), result(report.ShortStatistic(l.Statistic)).live(find(verdictStatistic)),
-		number(l.Value, shareFormat).live(find(verdictValue)), number(l.Limit, levelFormat).live(find(verdictLimit)),
-		number(l.Share, shareFormat).live(find(verdictShare)), result(l.Result).live(find(verdictResult)),
+		number(l.Value, computedFormat).live(find(verdictValue)), number(l.Limit, limitFormat).live(find(verdictLimit)),
+		number(l.Share, computedFormat).live(find(verdictShare)), result(l.Result).live(find(verdictResult)),
 		count(v.row[keyOf(l.Finding)]).live(fmt.Sprintf(`IFERROR(MATCH(LARGE(%s,%d),%s,0)+%d,"")`, key, k, key, v.first-1)))
 }
 
@@ -174,5 +172,3 @@ func (s *sheet) contents() {
 		s.links = append(s.links, link{at(1, n), other.quoted() + "!A1"})
 	}
 }
-
-var _ = excelize.NewFile // until charts

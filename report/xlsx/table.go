@@ -12,17 +12,21 @@ func itoa(n int) string { return strconv.Itoa(n) }
 const wideColumn = 60
 
 // noteWidth is how long the lines of a note are.
-const noteWidth = 130
+const noteWidth = 150
 
 // table writes one of the survey's tables: title, heads, units, rows, notes. It returns the first and last row of the
 // data.
 func (s *sheet) table(t report.Table) (first, last int) {
 	s.part(t.Title)
+	return s.untitled(t)
+}
+
+func (s *sheet) untitled(t report.Table) (first, last int) {
 	units := unitColumns(t)
 	var columns []column
 	for i, c := range t.Columns {
 		col := column{head: c.Head, unit: c.Unit}
-		if c.Wide {
+		if c.Wide && !s.tight {
 			col.width = wideColumn
 		}
 		columns = append(columns, col)
@@ -32,13 +36,24 @@ func (s *sheet) table(t report.Table) (first, last int) {
 	}
 	first = s.header(columns) + 1
 	for _, r := range t.Rows {
-		s.add(tableRow(t, units, r)...)
+		s.add(s.tableRow(t, units, r)...)
 	}
 	last = s.next() - 1
 	for _, n := range t.Notes {
-		s.note(n, noteWidth)
+		s.note(n, s.room(len(columns)))
 	}
 	return first, last
+}
+
+// room is how many letters of a note go over some columns.
+func (s *sheet) room(columns int) int {
+	sum := 0.0
+	for i, w := range s.fit() {
+		if i < columns {
+			sum += w
+		}
+	}
+	return min(max(int(1.15*sum), 100), noteWidth)
 }
 
 // unitColumns tells the columns whose rows have units of their own.
@@ -54,18 +69,16 @@ func unitColumns(t report.Table) map[int]bool {
 	return out
 }
 
-func tableRow(t report.Table, units map[int]bool, r []report.Cell) []cell {
+func (s *sheet) tableRow(t report.Table, units map[int]bool, r []report.Cell) []cell {
 	var out []cell
 	for i, c := range r {
 		made := tableCell(c)
-		if t.Columns[i].Wide {
-			made.style.wrap, made.style.top = true, true
-		} else if made.style.format == "" {
-			made.style.top = true
+		if t.Columns[i].Wide && !s.tight {
+			made.style.wrap = true
 		}
 		out = append(out, made)
 		if units[i] {
-			out = append(out, text(c.Unit).as(topLook))
+			out = append(out, text(c.Unit))
 		}
 	}
 	return out
@@ -74,13 +87,9 @@ func tableRow(t report.Table, units map[int]bool, r []report.Cell) []cell {
 func tableCell(c report.Cell) cell {
 	switch {
 	case !c.Time.IsZero():
-		out := moment(c.Time)
-		out.style.top = true
-		return out
+		return moment(c.Time)
 	case c.IsNum:
-		out := number(float64(c.Number), decimalsOf(c.Text))
-		out.style.top = true
-		return out
+		return number(float64(c.Number), decimalsOf(c.Text))
 	case c.Text == report.Dash:
 		return none
 	}
@@ -90,7 +99,7 @@ func tableCell(c report.Cell) cell {
 // tables writes those of the given keys that the survey has, with room between.
 func (s *sheet) tables(keys ...string) (any bool) {
 	for _, key := range keys {
-		t, ok := report.TableByKey(s.book.survey, key)
+		t, ok := s.book.tables[key]
 		if !ok {
 			continue
 		}

@@ -198,9 +198,9 @@ func (l *line) sizeCell(in inputs) cell {
 	case l.relative:
 		return none
 	case l.Channel.Voltage() && in.nominal[l.Channel] != "":
-		return number(l.size, levelFormat).orEmpty().live(in.nominal[l.Channel])
+		return number(l.size, computedFormat).orEmpty().live(in.nominal[l.Channel])
 	case l.Channel.Current():
-		return number(l.size, levelFormat).orEmpty().live(fmt.Sprintf(`IF(N(%[1]s)>0,%[1]s,"")`, nameIL))
+		return number(l.size, computedFormat).orEmpty().live(fmt.Sprintf(`IF(N(%[1]s)>0,%[1]s,"")`, nameIL))
 	}
 	return measured(l.size)
 }

@@ -114,11 +114,11 @@ func (b *book) verdictRow(s *sheet, l *line, in inputs) int {
 	put(verdictChannel, text(string(l.Channel)))
 	put(verdictWhat, text(report.QuantityName(l.Quantity, l.Order)))
 	put(verdictStatistic, text(report.ShortStatistic(l.Statistic)))
-	put(verdictValue, number(l.Value, shareFormat).orEmpty().live(l.scaled(c(verdictMeasured), c(verdictSize))))
-	put(verdictLow, number(l.ValueLow, shareFormat).orEmpty().live(l.bound(c(verdictMeasuredLow), c(verdictSize), "-", c(verdictUncertainty))))
-	put(verdictHigh, number(l.ValueHigh, shareFormat).orEmpty().live(l.bound(c(verdictMeasuredHigh), c(verdictSize), "+", c(verdictUncertainty))))
+	put(verdictValue, number(l.Value, computedFormat).orEmpty().live(l.scaled(c(verdictMeasured), c(verdictSize))))
+	put(verdictLow, number(l.ValueLow, computedFormat).orEmpty().live(l.bound(c(verdictMeasuredLow), c(verdictSize), "-", c(verdictUncertainty))))
+	put(verdictHigh, number(l.ValueHigh, computedFormat).orEmpty().live(l.bound(c(verdictMeasuredHigh), c(verdictSize), "+", c(verdictUncertainty))))
 	b.putLimit(put, l)
-	put(verdictShare, number(l.Share, shareFormat).orEmpty().live(fmt.Sprintf(`IF(AND(ISNUMBER(%[1]s),N(%[2]s)>0),100*%[1]s/%[2]s,"")`, c(verdictValue), c(verdictLimit))))
+	put(verdictShare, number(l.Share, computedFormat).orEmpty().live(fmt.Sprintf(`IF(AND(ISNUMBER(%[1]s),N(%[2]s)>0),100*%[1]s/%[2]s,"")`, c(verdictValue), c(verdictLimit))))
 	put(verdictResult, result(l.Result).live(resultFormula(c)))
 	put(verdictSurveyed, text(l.Result))
 	if l.Order > 0 {
@@ -133,18 +133,18 @@ func (b *book) verdictRow(s *sheet, l *line, in inputs) int {
 	put(verdictSize, l.sizeCell(in))
 	put(verdictBasis, text(l.Basis))
 	if ref := in.uncertainty[l.Channel]; ref != "" {
-		put(verdictUncertainty, number(l.uncertainty(b), levelFormat).live("N("+ref+")"))
+		put(verdictUncertainty, number(l.uncertainty(b), computedFormat).live("N("+ref+")"))
 	} else {
-		put(verdictUncertainty, number(l.uncertainty(b), levelFormat))
+		put(verdictUncertainty, number(l.uncertainty(b), computedFormat))
 	}
 	put(verdictNoise, measured(l.noise))
-	put(verdictNoisePct, number(l.Floor, shareFormat).orEmpty().live(l.scaled(c(verdictNoise), c(verdictSize))))
+	put(verdictNoisePct, number(l.Floor, computedFormat).orEmpty().live(l.scaled(c(verdictNoise), c(verdictSize))))
 	put(verdictAllows, text(l.allows))
-	put(verdictSampleLow, number(l.SampleLow, shareFormat))
-	put(verdictSampleHigh, number(l.SampleHigh, shareFormat))
-	put(verdictOver, number(l.OverPct, shareFormat))
+	put(verdictSampleLow, number(l.SampleLow, computedFormat))
+	put(verdictSampleHigh, number(l.SampleHigh, computedFormat))
+	put(verdictOver, number(l.OverPct, computedFormat))
 	// Equal shares get keys of their own, so that the summary can rank them.
-	put(verdictKeyed, number(sortKey(l.Share, n), shareFormat).orEmpty().live(fmt.Sprintf(`IF(ISNUMBER(%[1]s),%[1]s-ROW()*1E-9,"")`, c(verdictShare))))
+	put(verdictKeyed, number(sortKey(l.Share, n), computedFormat).orEmpty().live(fmt.Sprintf(`IF(ISNUMBER(%[1]s),%[1]s-ROW()*1E-9,"")`, c(verdictShare))))
 	if start := b.survey.Recording.Start; start != nil && l.To > l.From {
 		put(verdictFrom, moment(start.Add(seconds(l.From))))
 		put(verdictTo, moment(start.Add(seconds(l.To))))
@@ -160,12 +160,12 @@ func seconds(s float64) time.Duration { return time.Duration(s * float64(time.Se
 // putLimit fills in the limit and what it comes from: by formula where the rule set is at hand.
 func (b *book) putLimit(put func(int, cell), l *line) {
 	if l.regime == nil {
-		put(verdictLimit, number(l.Limit, levelFormat))
+		put(verdictLimit, number(l.Limit, limitFormat))
 		put(verdictRow, text(l.LimitRow))
 		return
 	}
 	forces := b.force
-	put(verdictLimit, number(l.Limit, levelFormat).orEmpty().live(forces.ref(forceLimit, l.force.row)))
+	put(verdictLimit, number(l.Limit, limitFormat).orEmpty().live(forces.ref(forceLimit, l.force.row)))
 	put(verdictRow, result(l.force.label).live(forces.ref(forceRow, l.force.row)))
 	put(verdictStop, result(l.regime.stop()).live(l.regime.stopRef))
 }
@@ -202,7 +202,7 @@ func (b *book) emphasise(s *sheet, where, first string) {
 		word string
 		look style
 	}{
-		{limits.Exceeds, style{bold: true, ink: "FFFFFF", fill: "8A2F00"}},
+		{limits.Exceeds, style{bold: true, ink: "FFFFFF", fill: "A84200"}},
 		{limits.Undecided, style{bold: true, fill: "D9D9D9"}},
 		{limits.NotAssessed, style{italic: true, ink: grey}},
 	} {
