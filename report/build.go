@@ -185,7 +185,7 @@ func findingsOf(in []limits.Finding) []Finding {
 			RuleSet: f.RuleSet, Clause: f.Clause, Channel: string(f.Channel), Quantity: f.Quantity, Order: f.Order,
 			Statistic: f.Statistic, Value: Number(f.Value), ValueLow: Number(f.ValueLow), ValueHigh: Number(f.ValueHigh),
 			SampleLow: Number(f.SampleLow), SampleHigh: Number(f.SampleHigh), Over: Number(f.OverPct), From: Number(f.From), To: Number(f.To),
-			Floor: Number(f.Floor), Limit: Number(f.Limit), Unit: f.Unit, Share: Number(f.Share), Result: f.Result, Why: f.Why, Basis: f.Basis,
+			Floor: Number(f.Floor), Limit: Number(f.Limit), LimitLevel: Number(f.Limit * f.BasisSize / 100), Unit: f.Unit, Share: Number(f.Share), Result: f.Result, Why: f.Why, Basis: f.Basis,
 			N: f.N, Indicative: f.Indicative, Unverified: f.Unverified,
 		})
 	}

@@ -280,6 +280,7 @@ type Finding struct {
 	To         Number `json:"to_s"`
 	Floor      Number `json:"noise_floor"` // what noise alone reads, in unit; null when unknown
 	Limit      Number `json:"limit"`
+	LimitLevel Number `json:"limit_level"` // the limit in the channel's unit; null where it is of the fundamental
 	Unit       string `json:"unit"`
 	Share      Number `json:"share_pct"`
 	Result     string `json:"result"`

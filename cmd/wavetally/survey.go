@@ -16,6 +16,7 @@ import (
 	"wavetally/harmonics"
 	"wavetally/harmonics/fitness"
 	"wavetally/harmonics/limits"
+	"wavetally/harmonics/plant"
 	"wavetally/harmonics/site"
 	"wavetally/report"
 	"wavetally/report/pdf"
@@ -114,7 +115,7 @@ func (a *app) survey(ctx context.Context, files []string, f surveyFlags) error {
 		return err
 	}
 	s := report.Build(report.Inputs{Sheet: rec.sheet, Header: rec.Header(), Notes: rec.notes(), Summary: sum, Doubts: doubts,
-		Findings: findings, RuleSets: rules, Hashes: sums, Version: version(), MadeAt: made})
+		Findings: findings, RuleSets: rules, Plant: screen(rec.sheet, sum), Hashes: sums, Version: version(), MadeAt: made})
 	if err := writeAll(ctx, f.into, f.documents(s)); err != nil {
 		return err
 	}
@@ -195,6 +196,14 @@ func (a *app) measure(ctx context.Context, rec *recording) (*harmonics.Summary, 
 	case <-ctx.Done():
 		return nil, nil, ctx.Err()
 	}
+}
+
+// screen is what the harmonics do to the declared plant.
+func screen(sheet site.Sheet, sum *harmonics.Summary) (out []report.Screening) {
+	for _, f := range plant.Screen(sheet, sum) {
+		out = append(out, report.Screening{Topic: f.Topic, Name: f.Name, Value: report.Number(f.Value), Unit: f.Unit, Text: f.Text})
+	}
+	return out
 }
 
 func judge(rules []*limits.RuleSet, sheet site.Sheet, sum *harmonics.Summary) (findings []limits.Finding) {
