@@ -107,7 +107,7 @@ func TestNamesInAnyLetterCase(t *testing.T) {
 	// Beside two that differ by letter case alone, the one of the same case is taken.
 	dir := t.TempDir()
 	write(t, filepath.Join(dir, "rec.cfg"), []byte(small("x", "V1")))
-	write(t, filepath.Join(dir, "REC.DAT"), []byte("not this one"))
+	write(t, filepath.Join(dir, "REC.dat"), []byte("not this one"))
 	if _, err := os.Stat(filepath.Join(dir, "rec.dat")); err == nil {
 		t.Skip("this disk does not tell letter case apart")
 	}
