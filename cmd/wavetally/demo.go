@@ -35,7 +35,7 @@ current sensor of the recording is the wrong way round, as happens: see how it i
 
 func (a *app) demo(ctx context.Context, into string) error {
 	// A demonstration should not be noticed: half the memory for a little more work.
-	defer debug.SetGCPercent(debug.SetGCPercent(40))
+	defer debug.SetMemoryLimit(debug.SetMemoryLimit(32 << 20))
 	fmt.Fprintf(a.out, "An invented bakery: %d s of seven channels at %d Hz, made up for this demonstration.\n\n", demoSeconds, demoRate)
 	if err := writeDemoSite(ctx, into); err != nil {
 		return err
