@@ -54,18 +54,21 @@ The report is %s. Try on its recording what you would do with your own:
 }
 
 // writeDemoSite writes the invented site's recording and site sheet.
-func writeDemoSite(ctx context.Context, into string) error {
-	sheet := document{"site.toml", func(w io.Writer) error {
-		return sitesheet.Write(w, demoSheet(), sitesheet.Comments{Files: []string{"board.cfg"}})
-	}}
-	if err := writeAll(ctx, into, []document{sheet}); err != nil {
+func writeDemoSite(ctx context.Context, into string) (err error) {
+	made, err := makeDir(into)
+	if err != nil {
 		return err
 	}
 	beside, err := os.MkdirTemp(into, ".board.*.part")
 	if err != nil {
 		return err
 	}
-	defer os.RemoveAll(beside)
+	defer func() {
+		os.RemoveAll(beside)
+		if err != nil {
+			removeEmpty(made)
+		}
+	}()
 	if err := comtrade.Write(filepath.Join(beside, "board"), stoppableSource{ctx, synth.New(demoRecording())}, comtrade.Binary); err != nil {
 		return err
 	}
@@ -74,7 +77,9 @@ func writeDemoSite(ctx context.Context, into string) error {
 			return err
 		}
 	}
-	return nil
+	return writeAll(ctx, into, []document{{"site.toml", func(w io.Writer) error {
+		return sitesheet.Write(w, demoSheet(), sitesheet.Comments{Files: []string{"board.cfg"}})
+	}}})
 }
 
 // A stoppableSource ends with the context's error once the context is done.

@@ -38,7 +38,7 @@ func message(ctx context.Context, err error) string {
 	var path *fs.PathError
 	switch {
 	case errors.Is(err, context.Canceled) && ctx.Err() != nil:
-		return "stopped before the end; nothing was written"
+		return "stopped before the end; nothing is left half written"
 	case errors.As(err, &path) && errors.Is(err, fs.ErrNotExist):
 		return path.Path + ": there is no such file; check the path"
 	case errors.As(err, &path) && errors.Is(err, fs.ErrPermission):

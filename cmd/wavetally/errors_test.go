@@ -27,7 +27,7 @@ func TestExitCodesAndMessages(t *testing.T) {
 		{t.Context(), &wave.ParseError{File: "a.csv", Line: 7, Msg: "is wrong;\ndo this"}, 1, "a.csv:7: is wrong; do this"},
 		{t.Context(), missing, 1, "no/such.csv: there is no such file; check the path"},
 		{t.Context(), &fs.PathError{Op: "open", Path: "a.csv", Err: fs.ErrPermission}, 1, "a.csv: may not be opened; check its permissions"},
-		{stopped, fmt.Errorf("survey.pdf: could not be written: %w", context.Canceled), 1, "stopped before the end; nothing was written"},
+		{stopped, fmt.Errorf("survey.pdf: could not be written: %w", context.Canceled), 1, "stopped before the end; nothing is left half written"},
 		{t.Context(), errors.New("no luck"), 1, "no luck"},
 	} {
 		if code := exitCode(c.err); code != c.code {

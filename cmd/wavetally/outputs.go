@@ -26,10 +26,8 @@ func writeAll(ctx context.Context, dir string, documents []document) (err error)
 	s := staged{}
 	defer func() {
 		s.clean()
-		for _, d := range made {
-			if err != nil {
-				_ = os.Remove(d) // only where it is empty
-			}
+		if err != nil {
+			removeEmpty(made)
 		}
 	}()
 	for _, d := range documents {
@@ -53,6 +51,13 @@ func makeDir(dir string) (made []string, err error) {
 			return made, os.MkdirAll(dir, 0o777)
 		}
 		made = append(made, d)
+	}
+}
+
+// removeEmpty removes the folders that are empty.
+func removeEmpty(dirs []string) {
+	for _, d := range dirs {
+		_ = os.Remove(d) // fails where something is in it
 	}
 }
 

@@ -151,7 +151,7 @@ func TestStoppedRunSaysSoAndWritesNothing(t *testing.T) {
 	if took := time.Since(begin); took > time.Second {
 		t.Errorf("it took %v to stop, want at most 1 s", took)
 	}
-	if got != codeFailed || complaint.String() != "wavetally: stopped before the end; nothing was written\n" {
+	if got != codeFailed || complaint.String() != "wavetally: stopped before the end; nothing is left half written\n" {
 		t.Errorf("code %d, %q", got, complaint.String())
 	}
 	if _, err := os.Stat(dir + "/out"); !errors.Is(err, os.ErrNotExist) {
