@@ -158,3 +158,16 @@ func TestStoppedRunSaysSoAndWritesNothing(t *testing.T) {
 		t.Errorf("the folder for the documents was made: %v", err)
 	}
 }
+
+func TestStoppedDemonstrationLeavesNothing(t *testing.T) {
+	dir := t.TempDir() + "/deep/demo"
+	ctx, stop := context.WithCancel(t.Context())
+	time.AfterFunc(100*time.Millisecond, stop) // its recording takes a second or two to make
+	var out, complaint strings.Builder
+	if got := run(ctx, []string{"demo", "--into", dir}, strings.NewReader(""), &out, &complaint); got != codeFailed {
+		t.Errorf("code %d, want %d", got, codeFailed)
+	}
+	if _, err := os.Stat(dir); !errors.Is(err, os.ErrNotExist) {
+		t.Errorf("the folder is still there: %v", err)
+	}
+}
