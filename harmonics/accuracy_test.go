@@ -2,7 +2,6 @@ package harmonics_test
 
 import (
 	"context"
-	"fmt"
 	"math"
 	"testing"
 
@@ -96,5 +95,5 @@ func accuracySteady(t *testing.T, nominal, hz, rate float64) {
 	if !(f <= boundFrequency) {
 		t.Errorf("frequency between %.5f and %.5f, want %.5f", s.Frequency.Min, s.Frequency.Max, hz)
 	}
-	t.Log(fmt.Sprintf("%4.0f  %9.4f  %9.0f  %4d | %21.5f  %12.4f  %13.5f  %6.4f  %11.5f", nominal, hz, rate, top, ofFundamental, ofReading, angle, 1000*f, thd))
+	t.Logf("%4.0f  %9.4f  %9.0f  %4d | %21.5f  %12.4f  %13.5f  %6.4f  %11.5f", nominal, hz, rate, top, ofFundamental, ofReading, angle, 1000*f, thd)
 }

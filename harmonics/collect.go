@@ -24,7 +24,6 @@ type collector struct {
 	nominal   float64
 	events    *events
 	linesOnly bool
-	cycles    int
 	frame     frame
 	reference int
 

@@ -46,11 +46,11 @@ func TestInterruptionNeedsAllPhases(t *testing.T) {
 // is rank 28 512 and 288 are over (practice.md 1.5 and 6.C, recomputed).
 func TestNearestRank(t *testing.T) {
 	for _, c := range []struct {
-		n    int64
+		n    int
 		p    float64
-		want int64
+		want int
 	}{{1008, 95, 958}, {144, 95, 137}, {1008, 99, 998}, {28800, 99, 28512}, {1, 95, 1}, {20, 95, 19}, {21, 95, 20}, {100, 99, 99}, {101, 99, 100}, {1000000, 95, 950000}} {
-		if got := nearestRank(c.n, c.p); got != c.want {
+		if got := NearestRank(c.n, c.p); got != c.want {
 			t.Errorf("rank of the %gth percentile of %d values: %d, want %d", c.p, c.n, got, c.want)
 		}
 	}
@@ -74,7 +74,7 @@ func TestSamplePercentiles(t *testing.T) {
 		at := slices.Index(values, slices.Max(values))
 		slices.Sort(values)
 		for _, c := range []struct{ p, got float64 }{{50, got.P50}, {95, got.P95}, {99, got.P99}} {
-			want := values[nearestRank(int64(n), c.p)-1]
+			want := values[NearestRank(n, c.p)-1]
 			high := 1.0
 			if n > keep {
 				high = 1.0011
@@ -120,11 +120,11 @@ func TestPercentileBoundsCover(t *testing.T) {
 	if share := float64(covered) / trials; share < 0.95-3*math.Sqrt(0.05*0.95/trials) {
 		t.Errorf("the bounds cover in %.3f of the trials", share)
 	}
-	if low, high := percentileBounds(20, 95); high <= 20 || low < 1 {
+	if low, high := PercentileRanks(20, 95); high <= 20 || low < 1 {
 		t.Errorf("20 values bound the 95th percentile from above at rank %d", high)
 	}
 	// Ranks of a textbook table cannot be cited here; for n = 1008 the normal approximation gives 957.6 ± 13.6.
-	if low, high := percentileBounds(1008, 95); low < 943 || low > 946 || high < 970 || high > 973 {
+	if low, high := PercentileRanks(1008, 95); low < 943 || low > 946 || high < 970 || high > 973 {
 		t.Errorf("1008 values: ranks %d to %d, want about 944 to 971", low, high)
 	}
 }

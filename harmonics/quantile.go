@@ -3,8 +3,6 @@ package harmonics
 import (
 	"math"
 	"slices"
-
-	"gonum.org/v1/gonum/stat/distuv"
 )
 
 // A sample collects values of one quantity for nearest-rank percentiles. Up to keep values it is exact. Beyond, values
@@ -72,7 +70,8 @@ func (s *sample) count(v float64) {
 }
 
 // rank returns the value of rank r, 1 the smallest.
-func (s *sample) rank(r int64) float64 {
+func (s *sample) rank(rank int) float64 {
+	r := int64(rank)
 	if r < 1 || r > s.n {
 		return math.NaN()
 	}
@@ -91,49 +90,18 @@ func (s *sample) rank(r int64) float64 {
 	return s.max
 }
 
-// nearestRank is the rank of percentile p, in per cent, among n values: the smallest rank that at least that share of
-// values does not exceed.
-func nearestRank(n int64, p float64) int64 {
-	r := int64(math.Ceil(p * float64(n) / 100 * (1 - 1e-15))) // 0.95·n is not exact in binary; a whole product must not round up
-	return min(max(r, 1), n)
-}
-
 func (s *sample) stats() Stats {
 	if s.n == 0 {
 		return Stats{}
 	}
 	slices.Sort(s.exact)
-	low, high := percentileBounds(s.n, 95)
+	n := int(s.n)
+	low, high := PercentileRanks(n, 95)
 	return Stats{
-		N: int(s.n), Mean: s.sum / float64(s.n), Max: s.max, MaxAt: s.maxAt,
-		P50: s.rank(nearestRank(s.n, 50)), P95: s.rank(nearestRank(s.n, 95)), P99: s.rank(nearestRank(s.n, 99)),
+		N: n, Mean: s.sum / float64(s.n), Max: s.max, MaxAt: s.maxAt,
+		P50: s.rank(NearestRank(n, 50)), P95: s.rank(NearestRank(n, 95)), P99: s.rank(NearestRank(n, 99)),
 		P95Low: s.rank(low), P95High: s.rank(high),
 	}
-}
-
-// percentileBounds returns the ranks between which the p-th percentile of the process lies with at least 95 %
-// confidence, whatever the distribution (H. A. David and H. N. Nagaraja, Order Statistics, 7.1): of n values, the number
-// at or below the percentile is binomial with n and p. A rank of 0 or n+1 says that n values are too few for a bound on
-// that side. It takes the values as independent; neighbouring intervals of one load are not quite.
-func percentileBounds(n int64, p float64) (low, high int64) {
-	b := distuv.Binomial{N: float64(n), P: p / 100}
-	// low: the largest l with P(K <= l-1) <= 2.5 %, high: the smallest u with P(K <= u-1) >= 97.5 %.
-	quantile := func(share float64) int64 { // smallest k with CDF(k) >= share
-		lo, hi := int64(0), n
-		for lo < hi {
-			if mid := (lo + hi) / 2; b.CDF(float64(mid)) >= share {
-				hi = mid
-			} else {
-				lo = mid + 1
-			}
-		}
-		return lo
-	}
-	low = quantile(0.025)
-	if b.CDF(float64(low)) > 0.025 {
-		low-- // largest k with CDF(k) <= 2.5 %
-	}
-	return low + 1, quantile(0.975) + 1
 }
 
 // statsOf is for values that are held anyway.
@@ -194,7 +162,7 @@ func (t *highest) percentile(p float64) float64 {
 	if t.n == 0 {
 		return math.NaN()
 	}
-	down := int(t.n - nearestRank(t.n, p)) // 0 is the highest
+	down := int(t.n) - NearestRank(int(t.n), p) // 0 is the highest
 	if down >= len(t.heap) {
 		return math.NaN()
 	}

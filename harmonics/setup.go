@@ -41,7 +41,7 @@ func resolve(h wave.Header, sheet site.Sheet) ([]channel, error) {
 		if _, twice := byRole[role]; twice {
 			return nil, fmt.Errorf("two channels measure %s; a survey has one channel a role", role)
 		}
-		i := Find(h, c.Source)
+		i := site.Find(h, c.Source)
 		if i < 0 {
 			return nil, fmt.Errorf("the recording has no channel %q; it has %s", c.Source, channelNames(h))
 		}
@@ -63,25 +63,6 @@ func resolve(h wave.Header, sheet site.Sheet) ([]channel, error) {
 		return nil, ErrNoChannels
 	}
 	return out, nil
-}
-
-// Find returns the index of the recording's channel that a site sheet calls source: its name, or its number from 1;
-// -1 when there is none.
-func Find(h wave.Header, source string) int {
-	for i, c := range h.Channels {
-		if c.Name == source {
-			return i
-		}
-	}
-	if n, err := strconv.Atoi(source); err == nil && n >= 1 && n <= len(h.Channels) {
-		return n - 1
-	}
-	for i, c := range h.Channels {
-		if strings.EqualFold(strings.TrimSpace(c.Name), strings.TrimSpace(source)) {
-			return i
-		}
-	}
-	return -1
 }
 
 func channelNames(h wave.Header) string {

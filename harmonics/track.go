@@ -38,8 +38,8 @@ const (
 
 // A carrier turns a frame of samples into the phasor of its fundamental.
 type carrier struct {
-	hz, rate float64
-	length   int
+	hz       float64
+	length   int       // samples
 	cos, sin []float64 // Hann window times carrier, carrier phase 0 in the middle of the frame
 }
 

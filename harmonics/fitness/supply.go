@@ -154,8 +154,7 @@ func (a *assessment) neutral() {
 		}
 	}
 	measured := p.Neutral.H[1]
-	var sum float64 // of the phases, from Mismatch = |measured - sum|: the larger or the smaller of the two
-	sum = a.phaseSum()
+	sum := a.phaseSum()
 	var mean float64
 	for _, r := range []site.Role{"I1", "I2", "I3"} {
 		if c, _ := a.channel(r); c != nil {

@@ -20,7 +20,7 @@
 //
 // # Periods and percentiles
 //
-// Percentiles are nearest rank over valid intervals, phases apart ([NearestRank]). Weeks are consecutive runs of seven
+// Percentiles are nearest rank over valid intervals, phases apart ([harmonics.NearestRank]). Weeks are consecutive runs of seven
 // days from the first 10 min interval, and the last seven days where the record is no whole number of weeks; the worst
 // one governs. From 95 % valid intervals a verdict stands as it is, from 80 % with a warning, below that a week does
 // not count. Days are treated alike; their 99th percentile of 3 s values is exact.

@@ -5,6 +5,8 @@ import (
 	"math/rand/v2"
 	"slices"
 	"testing"
+
+	"wavetally/harmonics"
 )
 
 // A week of 10 min values and a day of 3 s values: IEEE 519 and EN 50160 let 5 % and 1 % of them lie above; ranks by
@@ -25,8 +27,8 @@ func TestNearestRank(t *testing.T) {
 		{1000, 99.9, 999}, // 99.9 has no exact binary form
 		{1, 95, 1}, {2, 50, 1}, {3, 50, 2}, {7, 100, 7}, {0, 95, 0}, {5, 0.001, 1},
 	} {
-		if got := NearestRank(c.n, c.p); got != c.want {
-			t.Errorf("NearestRank(%d, %v) = %d, want %d", c.n, c.p, got, c.want)
+		if got := harmonics.NearestRank(c.n, c.p); got != c.want {
+			t.Errorf("harmonics.NearestRank(%d, %v) = %d, want %d", c.n, c.p, got, c.want)
 		}
 	}
 }
@@ -39,8 +41,8 @@ func TestNearestRankIsItsDefinition(t *testing.T) {
 			for want*100 < p*n {
 				want++
 			}
-			if got := NearestRank(n, float64(p)); got != want {
-				t.Fatalf("NearestRank(%d, %d) = %d, want %d", n, p, got, want)
+			if got := harmonics.NearestRank(n, float64(p)); got != want {
+				t.Fatalf("harmonics.NearestRank(%d, %d) = %d, want %d", n, p, got, want)
 			}
 		}
 	}
@@ -59,8 +61,8 @@ func TestConfidenceRanks(t *testing.T) {
 		{36, 95, 31, 37}, // (0.95)^36 = 0.158: no upper bound
 		{8, 100, 0, 9}, {0, 95, 0, 1},
 	} {
-		if low, high := confidenceRanks(c.n, c.p); low != c.low || high != c.high {
-			t.Errorf("confidenceRanks(%d, %v) = %d, %d; want %d, %d", c.n, c.p, low, high, c.low, c.high)
+		if low, high := harmonics.PercentileRanks(c.n, c.p); low != c.low || high != c.high {
+			t.Errorf("harmonics.PercentileRanks(%d, %v) = %d, %d; want %d, %d", c.n, c.p, low, high, c.low, c.high)
 		}
 	}
 }
@@ -69,7 +71,7 @@ func TestConfidenceRanks(t *testing.T) {
 // time, and not much more.
 func TestConfidenceRanksCover(t *testing.T) {
 	const runs, n, p = 4000, 1008, 95
-	low, high := confidenceRanks(n, p)
+	low, high := harmonics.PercentileRanks(n, p)
 	random := rand.New(rand.NewPCG(1, 2))
 	held := 0
 	for range runs {

@@ -106,7 +106,7 @@ func (r *reader) percentile(s Statistic, q quantity, first, last int) reading {
 	}
 	sorted := rank(values)
 	n := len(sorted)
-	out := reading{value: sorted.at(NearestRank(n, s.Percentile)), level: math.NaN(), n: n, sorted: sorted}
+	out := reading{value: sorted.at(harmonics.NearestRank(n, s.Percentile)), level: math.NaN(), n: n, sorted: sorted}
 	if i := slices.Index(values, out.value); i >= 0 {
 		out.level = q.level(&r.sum.Tens[first+i].Channels[q.channel])
 	}
@@ -119,7 +119,7 @@ func (r *reader) confidence(n int, p float64) (low, high int) {
 	k := boundsKey{n, p}
 	b, done := r.bounds[k]
 	if !done {
-		b[0], b[1] = confidenceRanks(n, p)
+		b[0], b[1] = harmonics.PercentileRanks(n, p)
 		r.bounds[k] = b
 	}
 	return b[0], b[1]

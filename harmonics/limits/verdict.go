@@ -5,6 +5,8 @@ import (
 	"math"
 	"slices"
 	"strings"
+
+	"wavetally/harmonics"
 )
 
 // A verdict is one finding being decided.
@@ -132,7 +134,7 @@ func (v *verdict) spent() string {
 	}
 	over := v.reading.sorted.above(v.finding.Limit)
 	want := int(span) / tenMinuteSeconds
-	allowed := want - NearestRank(want, v.statistic.Percentile)
+	allowed := want - harmonics.NearestRank(want, v.statistic.Percentile)
 	if over <= allowed {
 		return ""
 	}

@@ -75,7 +75,8 @@ func isAre(n int) string {
 }
 
 func worse(r *Report) string {
-	var up, down, few, none []string
+	var up, down []string
+	unchanged := 0
 	for i := range r.Series {
 		s := &r.Series[i]
 		switch s.Answer {
@@ -83,10 +84,8 @@ func worse(r *Report) string {
 			up = append(up, fmt.Sprintf("%s by %s a year", s.Name(), rate(s)))
 		case "falling":
 			down = append(down, s.Name())
-		case "too few months":
-			few = append(few, s.Name())
 		case "no change shown":
-			none = append(none, s.Name())
+			unchanged++
 		}
 	}
 	var parts []string
@@ -94,19 +93,27 @@ func worse(r *Report) string {
 		parts = append(parts, fmt.Sprintf("Rising: %s", head(up, 3)))
 	}
 	if len(down) > 0 {
-		parts = append(parts, fmt.Sprintf("falling: %s", head(down, 3)))
+		parts = append(parts, fmt.Sprintf("%s: %s", capital("falling", len(up) == 0), head(down, 3)))
 	}
-	if len(none) > 0 {
-		parts = append(parts, fmt.Sprintf("no change shown in %d others", len(none)))
-		if len(up)+len(down) == 0 {
-			parts[len(parts)-1] = fmt.Sprintf("No change is shown in any of the %d quantities followed", len(none))
-		}
+	switch {
+	case unchanged > 0 && len(up)+len(down) == 0:
+		parts = append(parts, fmt.Sprintf("No change is shown in any of the %d quantities tested", unchanged))
+	case unchanged > 0:
+		parts = append(parts, fmt.Sprintf("no change shown in %d others", unchanged))
 	}
 	if len(parts) == 0 {
 		return fmt.Sprintf("Too few solid months to tell a trend from chance: at least %d are needed.", leastMonths)
 	}
 	text := strings.Join(parts, "; ") + "."
 	return text + yearAgo(r)
+}
+
+// capital begins a sentence where first is set.
+func capital(word string, first bool) string {
+	if first {
+		return strings.ToUpper(word[:1]) + word[1:]
+	}
+	return word
 }
 
 // rate writes a slope with its interval.
