@@ -7,6 +7,7 @@ import (
 
 	"wavetally/harmonics"
 	"wavetally/harmonics/fitness"
+	"wavetally/harmonics/limits"
 )
 
 // fitnessOf says in one sentence how good the record is: how long, how much of it counts, and what weakens it.
@@ -16,8 +17,10 @@ func fitnessOf(s *Survey) string {
 		parts = append(parts, text)
 	} else if len(s.Findings) == 0 {
 		parts = append(parts, "no limit was applied")
-	} else if s.indicative() {
+	} else if some, only := s.Indicative(); only {
 		parts = append(parts, "indicative only, since the limits are for longer records")
+	} else if some {
+		parts = append(parts, "long enough for some of the limits, indicative for the others")
 	} else {
 		parts = append(parts, "nothing found that stops a verdict")
 	}
@@ -52,8 +55,11 @@ func longest(sum *harmonics.Summary) ([]harmonics.Interval, string) {
 	return sum.Threes, "3 s"
 }
 
-func (s *Survey) indicative() bool {
-	return slices.ContainsFunc(s.Findings, func(f Finding) bool { return f.Indicative })
+// Indicative reports whether some findings rest on less than their rule asks for, and whether there is nothing but such.
+func (s *Survey) Indicative() (some, only bool) {
+	some = slices.ContainsFunc(s.Findings, func(f Finding) bool { return f.Indicative })
+	decided := slices.ContainsFunc(s.Findings, func(f Finding) bool { return f.Result == limits.Within || f.Result == limits.Exceeds })
+	return some, some && !decided
 }
 
 // stopped names what keeps channels, or the whole record, from being judged.

@@ -84,7 +84,7 @@ func declareMissing(s *Survey) string {
 
 // recordLonger asks for the length that the rules' statistics need.
 func recordLonger(s *Survey) string {
-	if !s.indicative() && len(s.Findings) > 0 && !slices.ContainsFunc(s.Doubts, func(d Doubt) bool { return d.Code == "short-record" }) {
+	if some, _ := s.Indicative(); !some && len(s.Findings) > 0 && !slices.ContainsFunc(s.Doubts, func(d Doubt) bool { return d.Code == "short-record" }) {
 		return ""
 	}
 	const week = 7 * 86400

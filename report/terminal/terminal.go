@@ -94,7 +94,7 @@ func (p *page) head(s *report.Survey) {
 	p.add(wrap(plain(about+"; "+strings.Join(channels, " ")), p.width)...)
 	p.add("")
 	verdict := strings.ToUpper(s.Headline.Verdict)
-	if slices.ContainsFunc(s.Findings, func(f report.Finding) bool { return f.Indicative }) {
+	if _, only := s.Indicative(); only {
 		verdict += ", indicative only"
 	}
 	p.hang(verdict+": ", report.Tally(s))
