@@ -201,6 +201,10 @@ func (it item) open() (wave.Source, error) {
 			return src, nil
 		}
 	}
+	if strings.EqualFold(filepath.Ext(it.path), ".dat") {
+		return nil, &wave.NotThisFormatError{File: it.name, Format: "a recording by itself",
+			Msg: "the data of a COMTRADE recording are read with their configuration; put the .cfg file of the same name into the same folder"}
+	}
 	return nil, &wave.NotThisFormatError{File: it.name, Format: "a recording that can be read",
 		Msg: fmt.Sprintf("it is none of COMTRADE, WAV and XLSX, and as a table of text %s; export the waveforms as one of these", other.Msg)}
 }
