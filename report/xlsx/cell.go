@@ -57,8 +57,13 @@ func count(n int) cell { return number(float64(n), wholeFormat) }
 // result is the word a formula gave, which may be empty.
 func result(s string) cell { return cell{value: s} }
 
-// moment is a date.
-func moment(t time.Time) cell { return cell{value: serial(t), style: dateLook} }
+// moment is a date; an empty cell where it is not known.
+func moment(t time.Time) cell {
+	if t.IsZero() {
+		return none
+	}
+	return cell{value: serial(t), style: dateLook}
+}
 
 // serial is the moment as spreadsheets count it: days since the end of 1899, UTC.
 func serial(t time.Time) float64 {

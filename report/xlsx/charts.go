@@ -130,7 +130,7 @@ func frame(c report.Chart, from *plotted, kind excelize.ChartType) *excelize.Cha
 		Title:        excelize.ChartTitle{Paragraph: []excelize.RichTextRun{{Text: cut(clean(c.Title), 250), Font: &excelize.Font{Size: 12, Bold: true, Color: "262626"}}}},
 		XAxis:        excelize.ChartAxis{Title: axisTitle(axisName(c.X)), Font: *axisFont(), TickLabelPosition: excelize.ChartTickLabelLow},
 		YAxis:        excelize.ChartAxis{Title: axisTitle(axisName(c.Y)), Font: *axisFont(), MajorGridLines: true},
-		ShowBlanksAs: "gap",
+		ShowBlanksAs: "gap", Format: excelize.GraphicOptions{AltText: cut(clean(c.Title+". "+c.Caption), 1000)},
 	}
 }
 

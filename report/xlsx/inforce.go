@@ -77,7 +77,7 @@ func (s *sheet) force(r *regime, order int, st limits.Statistic, refs factorRefs
 	}
 	s.add(text(report.RuleTitle(r.set.Name)), text(r.kind), text(orderWord(r.kind, order, basis)), orderCell, text(report.ShortStatistic(st.String())),
 		result(e.row).live(e.rowFormula), number(e.pct, limitFormat).orEmpty().live(e.pctFormula), ofOrderCell, ofStatCell,
-		number(limit, limitFormat).orEmpty().live(fmt.Sprintf(`IF(ISNUMBER(%[1]s),%[1]s*%[2]s*%[3]s,"")`, at(forceTable, n), at(forceOfOrder, n), at(forceOfStat, n))),
+		number(limit, limitFormat).orEmpty().live(fmt.Sprintf(`IF(N(%[1]s)>0,%[1]s*%[2]s*%[3]s,"")`, at(forceTable, n), at(forceOfOrder, n), at(forceOfStat, n))),
 		text(e.status))
 	return force{regime: r, row: n, limit: limit, label: e.row}
 }

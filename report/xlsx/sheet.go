@@ -224,7 +224,7 @@ func (s *sheet) setHeights() {
 			}
 		}
 		if lines > 1 {
-			s.height(i+1, float64(lines)*lineHeight+2.25)
+			s.height(i+1, min(float64(lines)*lineHeight+2.25, excelize.MaxRowHeight))
 		}
 	}
 }

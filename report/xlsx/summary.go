@@ -66,6 +66,10 @@ func (s *sheet) sentences(title string, list []string) {
 func (s *sheet) counts(verdicts []verdictRange) {
 	s.gap()
 	s.part("Verdicts at the inputs of sheet Site")
+	if len(s.book.survey.Findings) == 0 {
+		s.lines("No limit was applied.")
+		return
+	}
 	changed := "0"
 	for _, v := range verdicts {
 		if !v.empty() {
@@ -79,11 +83,12 @@ func (s *sheet) counts(verdicts []verdictRange) {
 	s.add(heads("Rule set", "On", "exceeds", "undecided", "not assessed", "within", "all")...)
 	for _, v := range verdicts {
 		for _, set := range setsOf(v.lines) {
+			n := s.next()
 			row := []cell{text(report.RuleTitle(set)), text(kindOf(v))}
 			for _, word := range results {
-				row = append(row, count(countOf(v.lines, set, word)).live(fmt.Sprintf("COUNTIFS(%s,%s,%s,%s)", v.column(verdictSet), quote(clean(report.RuleTitle(set))), v.column(verdictResult), quote(word))))
+				// Not COUNTIFS, which reads a name such as ">5" or "a*" as a condition.
+				row = append(row, count(countOf(v.lines, set, word)).live(fmt.Sprintf("SUMPRODUCT((%s=%s)*(%s=%s))", v.column(verdictSet), fixed(1, n), v.column(verdictResult), quote(word))))
 			}
-			n := s.next()
 			row = append(row, count(countOf(v.lines, set, "")).live(fmt.Sprintf("SUM(%s:%s)", at(3, n), at(6, n))))
 			s.add(row...)
 		}

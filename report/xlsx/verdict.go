@@ -12,11 +12,13 @@ import (
 
 // What a record allows a finding to be, whatever its value and limit.
 const (
-	allowsAny      = "any result"
-	allowsOpen     = "undecided"    // the record is shorter than the statistic
-	allowsNothing  = "not assessed" // a doubt stops the verdict, or nothing was measured
-	allowsExceeds  = "not within"   // a total lacks orders: it can only be seen to exceed
+	allowsAny     = "any result"
+	allowsOpen    = "undecided"    // the record is shorter than the statistic
+	allowsNothing = "not assessed" // a doubt stops the verdict, or nothing was measured
+	allowsExceeds = "not within"   // a total lacks orders: it can only be seen to exceed
+
 	levelUnitShare = "% of fund."
+	levelUnitBasis = "% of basis"
 )
 
 // A line is one finding as the verdict sheets need it.
@@ -184,6 +186,8 @@ func (l *line) decided(allows string) string {
 // unit is that of the measured numbers.
 func (l *line) unit() string {
 	switch {
+	case l.relative && l.Basis != "fundamental":
+		return levelUnitBasis // of a survey read back from JSON
 	case l.relative:
 		return levelUnitShare
 	case l.Channel.Voltage():

@@ -193,7 +193,7 @@ func resultFormula(c func(int) string) string {
 	compared := fmt.Sprintf(`IF(%s>%s,%s,%s)`, low, limit, quote(limits.Exceeds), last)
 	noisy := fmt.Sprintf(`AND(N(%[1]s)>%[2]s/2,%[3]s^2-N(%[1]s)^2<=%[2]s^2)`, noise, limit, low)
 	open := fmt.Sprintf(`IF(OR(%s=%s,%s),%s,%s)`, allows, quote(allowsOpen), noisy, quote(limits.Undecided), compared)
-	return fmt.Sprintf(`IF(OR(%s<>"",NOT(ISNUMBER(%s)),NOT(ISNUMBER(%s)),%s=%s),%s,%s)`, c(verdictStop), value, limit, allows, quote(allowsNothing), quote(limits.NotAssessed), open)
+	return fmt.Sprintf(`IF(OR(%s<>"",NOT(ISNUMBER(%s)),N(%s)<=0,%s=%s),%s,%s)`, c(verdictStop), value, limit, allows, quote(allowsNothing), quote(limits.NotAssessed), open)
 }
 
 // emphasise makes results stand out, also in grey: by weight, slant and a dark field. The words say the same.
