@@ -19,13 +19,13 @@ func (b *book) methodSheet(s *sheet) {
 // closingSheets are doubts, what was left out, log and safety.
 func (b *book) closingSheets() {
 	b.doubtSheet(b.sheet("Doubts", "what weakens the numbers, and what stays open"))
-	for _, one := range []struct{ name, about, title, key string }{
-		{"Events", "voltage dips, swells and interruptions", "Voltage events", "events"},
-		{"Excluded", "stretches that statistics leave out", "Excluded from statistics", "excluded"},
-		{"Noise", "orders whose noise hides a harmonic at the limit", "Noise", "noise"},
+	for _, one := range []struct{ name, about, key string }{
+		{"Events", "voltage dips, swells and interruptions", "events"},
+		{"Excluded", "stretches that statistics leave out", "excluded"},
+		{"Noise", "orders whose noise hides a harmonic at the limit", "noise"},
 	} {
 		if _, ok := b.tables[one.key]; ok {
-			b.single(b.sheet(one.name, one.about), one.title, 0, one.key)
+			b.single(b.sheet(one.name, one.about), one.key)
 		}
 	}
 	b.logSheet(b.sheet("Log", "files with their checksums, program, settings"))

@@ -2,6 +2,7 @@ package xlsx
 
 import (
 	"bytes"
+	"sync"
 	"testing"
 
 	"github.com/xuri/excelize/v2"
@@ -9,22 +10,56 @@ import (
 	"wavetally/harmonics/fitness"
 	"wavetally/harmonics/limits"
 	"wavetally/report"
+	"wavetally/report/internal/fixture"
 )
+
+// The invented surveys, judged by the real rule sets, and their workbooks: made once, for tests that only look.
+var (
+	weekSurvey  = sync.OnceValue(func() *report.Survey { return judgedBy(fixture.WeekInputs(), "ieee-519-2022", "en-50160") })
+	shortSurvey = sync.OnceValue(func() *report.Survey { return judgedBy(fixture.ShortInputs(), "ieee-519-2022", "en-50160") })
+	weekBook    = sync.OnceValue(func() []byte { return mustWrite(weekSurvey()) })
+	shortBook   = sync.OnceValue(func() []byte { return mustWrite(shortSurvey()) })
+)
+
+// judgedBy is judged for values made once; a rule set that is not there panics.
+func judgedBy(in report.Inputs, sets ...string) *report.Survey {
+	s, err := judge(in, sets)
+	if err != nil {
+		panic(err)
+	}
+	return s
+}
+
+func mustWrite(s *report.Survey) []byte {
+	var b bytes.Buffer
+	if err := Write(&b, s); err != nil {
+		panic(err)
+	}
+	return b.Bytes()
+}
 
 // judged builds a survey from invented measurements, judged by the real rule sets.
 func judged(t testing.TB, in report.Inputs, sets ...string) *report.Survey {
 	t.Helper()
+	s, err := judge(in, sets)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return s
+}
+
+func judge(in report.Inputs, sets []string) (*report.Survey, error) {
 	in.Findings, in.RuleSets = nil, nil
 	for _, name := range sets {
 		set, err := limits.Load(name)
 		if err != nil {
-			t.Fatal(err)
+			return nil, err
 		}
 		in.RuleSets = append(in.RuleSets, set)
 		in.Findings = append(in.Findings, set.Judge(in.Sheet, in.Summary)...)
 	}
 	in.Findings = fitness.Apply(in.Findings, in.Doubts)
-	return report.Build(in)
+	return report.Build(in), nil
 }
 
 func written(t testing.TB, s *report.Survey) []byte {

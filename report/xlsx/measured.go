@@ -12,21 +12,18 @@ func (b *book) measuredSheets(verdicts []verdictRange) {
 	p.spectrograms()
 	b.powerSheet(b.sheet("Power", "power after IEEE 1459-2010, unbalance, sequences, neutral, phasors"), p)
 	if _, ok := b.tables["plant"]; ok {
-		b.single(b.sheet("Plant", "screening figures on transformer, neutral, cables, capacitors"), "Plant: screening, not design", 1, "plant")
+		b.single(b.sheet("Plant", "screening figures on transformer, neutral, cables, capacitors"), "plant")
 	}
 	b.seriesSheets(p)
 	p.draw(charts)
 }
 
-// single writes tables under a title.
-func (b *book) single(s *sheet, title string, frozenCols int, keys ...string) {
-	s.title(title)
-	for _, key := range keys {
-		s.gap()
-		s.tables(key)
-	}
-	s.freeze(1, frozenCols, 0)
-	s.repeat = 0
+// single writes one table on a sheet of its own, with its heads in sight.
+func (b *book) single(s *sheet, key string) {
+	t := b.tables[key]
+	s.title(t.Title)
+	first, _ := s.untitled(t)
+	s.freeze(first-1, 0, 2)
 }
 
 // spectrumSheets are the long tables by order.

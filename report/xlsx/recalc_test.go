@@ -119,8 +119,7 @@ func TestRecalculation(t *testing.T) {
 		t.Skip("LibreOffice takes some seconds")
 	}
 	sets := []string{"ieee-519-2022", "en-50160"}
-	in := fixture.WeekInputs()
-	survey := judged(t, in, sets...)
+	survey := weekSurvey()
 	books := map[string][]byte{
 		"week":  written(t, lean(survey)),
 		"short": written(t, lean(judged(t, fixture.ShortInputs(), "ieee-519-2014", "iec-61000-2-4-class3"))),

@@ -80,7 +80,13 @@ func (b *book) channelsOf(voltage bool) []int {
 // start heads and fills the column that says when an interval began: a date where the recording's start is known.
 func (b *book) start() (column, func(harmonics.Interval) cell) {
 	if begin := b.survey.Recording.Start; begin != nil {
-		return column{head: "Start", unit: "UTC", width: 19}, func(iv harmonics.Interval) cell { return moment(begin.Add(seconds(iv.At))) }
+		return column{head: "Start", unit: "UTC", width: 20}, func(iv harmonics.Interval) cell {
+			c := moment(begin.Add(seconds(iv.At)))
+			if iv.Span < 60 {
+				c.style = momentLook
+			}
+			return c
+		}
 	}
 	return column{head: "Start", unit: "s from the beginning", width: 19}, func(iv harmonics.Interval) cell { return number(iv.At, "0.0") }
 }
@@ -233,6 +239,7 @@ func (o *orderSeries) write(s *sheet, name, kind string) {
 	s.printed, s.long = 16, min(len(o.ivs), 30)
 	s.body = o.stream
 	o.id(dateLook)
+	o.id(momentLook)
 	o.id(style{indent: true})
 	o.id(style{format: computedFormat})
 	o.name("Orders_"+strings.NewReplacer(" ", "_", "(", "", ")", "").Replace(name)+"_"+string(kind[0]-'a'+'A'), s.span(1, units+1, len(o.columns()), units+len(o.ivs)))
@@ -256,8 +263,11 @@ func (o *orderSeries) stream(w *excelize.StreamWriter, row int) error {
 	_, start := o.start()
 	date, level := o.styles[dateLook], o.styles[style{format: computedFormat}]
 	words := o.styles[style{indent: true}]
-	if o.survey.Recording.Start == nil {
+	switch {
+	case o.survey.Recording.Start == nil:
 		date = level
+	case len(o.ivs) > 0 && o.ivs[0].Span < 60:
+		date = o.styles[momentLook]
 	}
 	cells := make([]any, 0, 2+len(o.channels)*2*harmonics.Orders)
 	for _, iv := range o.ivs {

@@ -357,7 +357,7 @@ func longestWord(s string) float64 {
 }
 
 func numberWidth(v float64, format string) float64 {
-	if format == dateLook.format {
+	if strings.HasPrefix(format, dateLook.format) {
 		return 18
 	}
 	whole := 1.0

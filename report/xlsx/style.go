@@ -37,17 +37,18 @@ const (
 )
 
 var (
-	plain     = style{}
-	titleLook = style{bold: true, size: 15}
-	partLook  = style{bold: true, size: 12}
-	headLook  = style{bold: true, wrap: true, fill: headFill}
-	unitLook  = style{italic: true, ink: grey, fill: headFill, line: true}
-	noteLook  = style{ink: grey}
-	boldLook  = style{bold: true}
-	wrapLook  = style{wrap: true}
-	linkLook  = style{ink: linkInk}
-	dateLook  = style{format: "yyyy-mm-dd hh:mm:ss"}
-	inputLook = style{fill: inputFill, frame: true}
+	plain      = style{}
+	titleLook  = style{bold: true, size: 15}
+	partLook   = style{bold: true, size: 12}
+	headLook   = style{bold: true, wrap: true, fill: headFill}
+	unitLook   = style{italic: true, ink: grey, fill: headFill, line: true}
+	noteLook   = style{ink: grey}
+	boldLook   = style{bold: true}
+	wrapLook   = style{wrap: true}
+	linkLook   = style{ink: linkInk}
+	dateLook   = style{format: "yyyy-mm-dd hh:mm:ss"}
+	momentLook = style{format: "yyyy-mm-dd hh:mm:ss.0"} // for intervals of some seconds
+	inputLook  = style{fill: inputFill, frame: true}
 )
 
 // Formats of numbers that formulas compute: as many decimals as show three or four significant digits. Formats know no

@@ -10,7 +10,6 @@ import (
 	"github.com/xuri/excelize/v2"
 
 	"wavetally/harmonics/limits"
-	"wavetally/report/internal/fixture"
 )
 
 // Dates as the documentation of a spreadsheet program's DATE function gives them: DATE(2008,1,1) is 39448; and the day
@@ -163,8 +162,7 @@ func computed(t *testing.T, f *excelize.File, row map[int]any) string {
 
 // The library that writes the workbook can also compute it: a second opinion where LibreOffice is missing.
 func TestFormulasByTheLibrary(t *testing.T) {
-	s := bare(judged(t, fixture.WeekInputs(), "ieee-519-2022"))
-	f := opened(t, written(t, s))
+	f := opened(t, written(t, bare(weekSurvey())))
 	for _, sheet := range []string{"Verdicts voltage", "Verdicts current"} {
 		rows := grid(t, f, sheet)
 		for r := 8; r < len(rows); r += 37 {

@@ -20,15 +20,11 @@ import (
 	"wavetally/report/internal/fixture"
 )
 
-func short(t testing.TB) *report.Survey {
-	return judged(t, fixture.ShortInputs(), "ieee-519-2022", "en-50160")
-}
-
 // The same survey gives the same bytes, and no time of the clock is in them.
 func TestSameBytes(t *testing.T) {
-	first := written(t, short(t))
+	first := shortBook()
 	for range 3 { // what comes in the order of a map shows on one of several runs
-		if !bytes.Equal(first, written(t, short(t))) {
+		if !bytes.Equal(first, written(t, judged(t, fixture.ShortInputs(), "ieee-519-2022", "en-50160"))) {
 			t.Fatal("two workbooks of one survey differ")
 		}
 	}
@@ -136,7 +132,7 @@ func units(s string) int {
 
 // Whatever the survey, each sheet is fit for use and for print, and no cell holds an error.
 func TestSheets(t *testing.T) {
-	for name, s := range map[string]*report.Survey{"short": short(t), "week": lean(judged(t, fixture.WeekInputs(), "ieee-519-2014")), "tiny": fixture.Tiny(), "read back": readBack(t), "empty": {}} {
+	for name, s := range map[string]*report.Survey{"short": shortSurvey(), "week": lean(weekSurvey()), "tiny": fixture.Tiny(), "read back": readBack(t), "empty": {}} {
 		t.Run(name, func(t *testing.T) {
 			f := opened(t, written(t, s))
 			checkBook(t, f)
@@ -148,7 +144,7 @@ func TestSheets(t *testing.T) {
 func readBack(t testing.TB) *report.Survey {
 	t.Helper()
 	var b bytes.Buffer
-	if err := report.WriteJSON(&b, short(t)); err != nil {
+	if err := report.WriteJSON(&b, shortSurvey()); err != nil {
 		t.Fatal(err)
 	}
 	s, err := report.ReadJSON(&b)
@@ -201,8 +197,7 @@ func checkBook(t *testing.T, f *excelize.File) {
 
 // The inputs are marked by a word and a look, and take only what fits.
 func TestInputs(t *testing.T) {
-	s := short(t)
-	f := opened(t, written(t, s))
+	f := opened(t, shortBook())
 	rows := grid(t, f, "Site")
 	checks, err := f.GetDataValidations("Site")
 	if err != nil {
@@ -228,10 +223,12 @@ func TestInputs(t *testing.T) {
 
 // Every number of every chart stands on the sheet that the list of charts names, beside its x.
 func TestChartNumbersAreThere(t *testing.T) {
-	for name, in := range map[string]report.Inputs{"short": fixture.ShortInputs(), "week": fixture.WeekInputs()} {
+	for name, made := range map[string]struct {
+		survey *report.Survey
+		book   []byte
+	}{"short": {shortSurvey(), shortBook()}, "week": {weekSurvey(), weekBook()}} {
 		t.Run(name, func(t *testing.T) {
-			s := judged(t, in, "ieee-519-2022", "en-50160")
-			f := opened(t, written(t, s))
+			s, f := made.survey, opened(t, made.book)
 			where := map[string]string{}
 			for _, r := range grid(t, f, "Charts") {
 				if len(r) > 2 {
@@ -291,8 +288,7 @@ func checkChart(t *testing.T, have map[string]bool, c report.Chart, sheet string
 
 // Native charts are there, and each line and bar points at the numbers of the chart it stands for.
 func TestNativeCharts(t *testing.T) {
-	survey := short(t)
-	b := written(t, survey)
+	survey, b := shortSurvey(), shortBook()
 	z, err := zip.NewReader(bytes.NewReader(b), int64(len(b)))
 	if err != nil {
 		t.Fatal(err)
@@ -340,8 +336,7 @@ func TestNativeCharts(t *testing.T) {
 
 // Limit lines of trends follow the limits and the demand current.
 func TestTrendLimitsAreLive(t *testing.T) {
-	survey := short(t)
-	f := opened(t, written(t, survey))
+	survey, f := shortSurvey(), opened(t, shortBook())
 	want := map[string]string{}
 	for _, c := range report.Charts(survey) {
 		for _, l := range c.Limits {
@@ -414,8 +409,7 @@ func sixes(v []float64) []string {
 
 // Series have one row an interval, dates that are dates, units in a row, flags in words.
 func TestSeries(t *testing.T) {
-	s := judged(t, fixture.WeekInputs(), "ieee-519-2022")
-	f := opened(t, written(t, s))
+	s, f := weekSurvey(), opened(t, weekBook())
 	rows := grid(t, f, "Series 10 min")
 	top := headRow(rows)
 	if top < 0 || rows[top+1][0] != "UTC" {
@@ -457,7 +451,7 @@ func headRow(rows [][]string) int {
 }
 
 func BenchmarkWeek(b *testing.B) {
-	s := judged(b, fixture.WeekInputs(), "ieee-519-2022", "en-50160")
+	s := weekSurvey()
 	for b.Loop() {
 		if err := Write(io.Discard, s); err != nil {
 			b.Fatal(err)
