@@ -108,11 +108,22 @@ func (b *book) write(w io.Writer) error {
 	if err := b.stream(); err != nil {
 		return fmt.Errorf("xlsx: %w", err)
 	}
-	b.file.SetZipWriter(func(to io.Writer) excelize.ZipWriter { return &packer{w: to} })
+	b.file.SetZipWriter(func(to io.Writer) excelize.ZipWriter { return &packer{w: to, bodies: b.bodies()} })
 	if err := b.file.Write(w); err != nil {
 		return fmt.Errorf("xlsx: %w", err)
 	}
 	return nil
+}
+
+// bodies are what sheets write while they are compressed, by the names of their parts.
+func (b *book) bodies() map[string]func(io.Writer) error {
+	out := map[string]func(io.Writer) error{}
+	for i, s := range b.sheets {
+		if s.body != nil {
+			out[fmt.Sprintf("xl/worksheets/sheet%d.xml", i+1)] = s.body
+		}
+	}
+	return out
 }
 
 // stream writes the cells of all sheets, one sheet a worker.

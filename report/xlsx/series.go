@@ -2,11 +2,10 @@ package xlsx
 
 import (
 	"fmt"
+	"io"
 	"math"
 	"slices"
 	"strings"
-
-	"github.com/xuri/excelize/v2"
 
 	"wavetally/harmonics"
 )
@@ -224,7 +223,7 @@ func (t *totals) firstHour(name string) string {
 	return ""
 }
 
-// orderSeries are the sheet of an interval series with every order of some channels. It is streamed.
+// orderSeries are the sheet of an interval series with every order of some channels.
 type orderSeries struct {
 	*book
 	channels []int
@@ -237,9 +236,11 @@ func (o *orderSeries) write(s *sheet, name, kind string) {
 	units := s.header(o.columns())
 	s.freeze(units, 2, units-1)
 	s.printed, s.long = 16, min(len(o.ivs), 30)
-	s.body = o.stream
+	first := units + 1
+	s.body = func(w io.Writer) error { return o.rows(w, first) }
 	o.id(dateLook)
 	o.id(momentLook)
+	o.id(number(0, "0.0").style)
 	o.id(style{indent: true})
 	o.id(style{format: computedFormat})
 	o.name("Orders_"+strings.NewReplacer(" ", "_", "(", "", ")", "").Replace(name)+"_"+string(kind[0]-'a'+'A'), s.span(1, units+1, len(o.columns()), units+len(o.ivs)))
@@ -259,48 +260,43 @@ func (o *orderSeries) columns() []column {
 	return out
 }
 
-func (o *orderSeries) stream(w *excelize.StreamWriter, row int) error {
+// rows writes one row an interval, from the given row on. Numbers are rounded to eight significant digits as in
+// survey.json: beyond any instrument, and half as long to write.
+func (o *orderSeries) rows(w io.Writer, row int) error {
 	_, start := o.start()
-	date, level := o.styles[dateLook], o.styles[style{format: computedFormat}]
-	words := o.styles[style{indent: true}]
-	switch {
-	case o.survey.Recording.Start == nil:
-		date = level
-	case len(o.ivs) > 0 && o.ivs[0].Span < 60:
-		date = o.styles[momentLook]
-	}
-	cells := make([]any, 0, 2+len(o.channels)*2*harmonics.Orders)
-	for _, iv := range o.ivs {
-		cells = append(cells[:0], excelize.Cell{StyleID: date, Value: start(iv).value}, excelize.Cell{StyleID: words, Value: yesNo(iv.Valid())})
-		for _, i := range o.channels {
-			cells = levels(cells, iv.Channels[i].H)
-			cells = levels(cells, iv.Channels[i].Inter)
+	level, words := o.styles[style{format: computedFormat}], o.styles[style{indent: true}]
+	r := newRowWriter(w, 2+len(o.channels)*2*harmonics.Orders)
+	for i, iv := range o.ivs {
+		r.begin(row + i)
+		when := start(iv)
+		at, _ := when.value.(float64)
+		r.value(at, o.styles[when.style])
+		r.word(yesNo(iv.Valid()), words)
+		for _, c := range o.channels {
+			r.levels(iv.Channels[c].H, level)
+			r.levels(iv.Channels[c].Inter, level)
 		}
-		if err := w.SetRow(at(1, row), cells, excelize.RowOpts{StyleID: level}); err != nil {
-			return err
-		}
-		row++
+		r.end()
 	}
-	return nil
+	r.flush()
+	return r.err
 }
 
-// levels appends the numbers of all orders, rounded to eight significant digits as in survey.json: beyond any
-// instrument, and half as long to write.
-func levels(cells []any, v []float64) []any {
+// levels writes the numbers of all orders.
+func (r *rowWriter) levels(v []float64, look int) {
 	for h := range harmonics.Orders {
-		if h >= len(v) || math.IsNaN(v[h]) || math.IsInf(v[h], 0) {
-			cells = append(cells, nil)
-			continue
+		x := math.NaN()
+		if h < len(v) {
+			x = v[h]
 		}
-		cells = append(cells, rounded(v[h]))
+		r.value(rounded(x), look)
 	}
-	return cells
 }
 
 // rounded keeps eight significant digits.
 func rounded(v float64) float64 {
-	if v == 0 {
-		return 0
+	if v == 0 || math.IsNaN(v) || math.IsInf(v, 0) {
+		return v
 	}
 	exponent := 7 - int(math.Floor(math.Log10(math.Abs(v))))
 	if exponent < 0 || exponent > 22 { // beyond what a power of ten is exact for

@@ -2,6 +2,7 @@ package xlsx
 
 import (
 	"cmp"
+	"io"
 	"strings"
 	"unicode/utf8"
 
@@ -15,8 +16,8 @@ type sheet struct {
 	name  string
 	about string
 	rows  [][]cell
-	body  func(*excelize.StreamWriter, int) error // writes from the given row on
-	long  int                                     // rows that body writes
+	body  func(io.Writer) error // writes more rows behind them
+	long  int                   // how many of body's rows are printed
 
 	widths     map[int]float64 // set by hand
 	heights    map[int]float64 // of rows, in points; else as high as the letters
@@ -296,11 +297,6 @@ func (s *sheet) write() error {
 			row = append(row, excelize.Cell{StyleID: s.book.styles[c.style], Formula: c.formula, Value: c.value})
 		}
 		if err := s.stream.SetRow(at(1, i+1), row, excelize.RowOpts{Height: s.heights[i+1]}); err != nil {
-			return err
-		}
-	}
-	if s.body != nil {
-		if err := s.body(s.stream, s.next()); err != nil {
 			return err
 		}
 	}

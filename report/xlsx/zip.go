@@ -5,6 +5,8 @@ import (
 	"bytes"
 	"cmp"
 	"compress/flate"
+	"fmt"
+	"hash"
 	"hash/crc32"
 	"io"
 	"io/fs"
@@ -18,23 +20,25 @@ import (
 // without times, so that the same parts give the same bytes. (The library hands over the sheets it streamed in the
 // order of a map.)
 type packer struct {
-	w     io.Writer
-	parts []*part
-	work  sync.WaitGroup
+	w      io.Writer
+	bodies map[string]func(io.Writer) error // rows that are written while their part is compressed, by the part's name
+	parts  []*part
+	work   sync.WaitGroup
 }
 
 type part struct {
 	name   string
+	body   func(io.Writer) error
 	raw    bytes.Buffer
 	packed bytes.Buffer
-	size   int
-	sum    uint32
+	size   int64
+	sum    hash.Hash32
 	err    error
 }
 
 func (p *packer) Create(name string) (io.Writer, error) {
 	p.finish()
-	p.parts = append(p.parts, &part{name: name})
+	p.parts = append(p.parts, &part{name: name, body: p.bodies[name], sum: crc32.NewIEEE()})
 	return &p.parts[len(p.parts)-1].raw, nil
 }
 
@@ -72,10 +76,38 @@ func (t *part) pack() {
 		t.err = err
 		return
 	}
-	_, err = z.Write(t.raw.Bytes())
-	t.err = cmp.Or(err, z.Close())
-	t.size, t.sum = t.raw.Len(), crc32.ChecksumIEEE(t.raw.Bytes())
+	t.err = cmp.Or(t.write(io.MultiWriter(z, t.sum, (*counter)(&t.size))), z.Close())
 	t.raw = bytes.Buffer{}
+}
+
+// write writes the part, with its body behind the rows that it has.
+func (t *part) write(w io.Writer) error {
+	raw, rest := t.raw.Bytes(), []byte(nil)
+	if t.body != nil {
+		end := bytes.LastIndex(raw, []byte("</sheetData>"))
+		if end < 0 {
+			return fmt.Errorf("%s has no rows to add to", t.name)
+		}
+		raw, rest = raw[:end], raw[end:]
+	}
+	if _, err := w.Write(raw); err != nil {
+		return err
+	}
+	if t.body != nil {
+		if err := t.body(w); err != nil {
+			return err
+		}
+	}
+	_, err := w.Write(rest)
+	return err
+}
+
+// A counter counts what is written to it.
+type counter int64
+
+func (c *counter) Write(p []byte) (int, error) {
+	*c += counter(len(p))
+	return len(p), nil
 }
 
 func (p *packer) Close() error {
@@ -87,7 +119,7 @@ func (p *packer) Close() error {
 		if t.err != nil {
 			return t.err
 		}
-		w, err := z.CreateRaw(&zip.FileHeader{Name: t.name, Method: zip.Deflate, CRC32: t.sum,
+		w, err := z.CreateRaw(&zip.FileHeader{Name: t.name, Method: zip.Deflate, CRC32: t.sum.Sum32(),
 			CompressedSize64: uint64(t.packed.Len()), UncompressedSize64: uint64(t.size)})
 		if err != nil {
 			return err
