@@ -112,7 +112,7 @@ func (p *plotter) native(c report.Chart, lines []plottedSeries) []*excelize.Char
 	case c.Kind == report.TrendChart:
 		made := lineNative(c, where, lines)
 		if p.survey.Recording.Start != nil {
-			made.XAxis.NumFmt = excelize.ChartNumFmt{CustomNumFmt: "mm-dd hh:mm"}
+			made.XAxis.NumFmt = excelize.ChartNumFmt{CustomNumFmt: clockFormat(c.X.High - c.X.Low)}
 			made.XAxis.Title = axisTitle("time, UTC")
 			low, high := serial(p.survey.Recording.Start.Add(seconds(c.X.Low))), serial(p.survey.Recording.Start.Add(seconds(c.X.High)))
 			made.XAxis.Minimum, made.XAxis.Maximum = &low, &high
@@ -122,6 +122,17 @@ func (p *plotter) native(c report.Chart, lines []plottedSeries) []*excelize.Char
 		return []*excelize.Chart{lineNative(c, where, nil)}
 	}
 	return nil
+}
+
+// clockFormat shows times along an axis of so many seconds.
+func clockFormat(span float64) string {
+	switch {
+	case span < 2*3600:
+		return "hh:mm:ss"
+	case span < 2*86400:
+		return "hh:mm"
+	}
+	return "mm-dd hh:mm"
 }
 
 func frame(c report.Chart, from *plotted, kind excelize.ChartType) *excelize.Chart {

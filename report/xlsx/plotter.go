@@ -287,10 +287,19 @@ func (p *plotter) heatMaps() {
 			}
 			s.add(row...)
 		}
-		s.shades = append(s.shades, at(4, first)+":"+at(len(columns), s.next()-1))
+		s.shades = append(s.shades, shadeOf(c.Grid, at(4, first)+":"+at(len(columns), s.next()-1)))
 		p.at[c.Key] = &plotted{sheet: s}
 	}
 	s.filter = at(1, units) + ":" + at(3, s.next()-1)
+}
+
+// shadeOf shades a grid's numbers over the scale of its chart; the middle of a logarithmic one is the geometric mean.
+func shadeOf(g *report.Grid, where string) shade {
+	middle := (g.Low + g.High) / 2
+	if g.Log {
+		middle = math.Sqrt(g.Low * g.High)
+	}
+	return shade{where, g.Low, middle, g.High}
 }
 
 func gridName(c report.Chart) string {
@@ -328,7 +337,7 @@ func (p *plotter) spectrograms() {
 			}
 			s.add(row...)
 		}
-		s.shades = append(s.shades, at(3, first)+":"+at(len(columns), s.next()-1))
+		s.shades = append(s.shades, shadeOf(c.Grid, at(3, first)+":"+at(len(columns), s.next()-1)))
 		p.at[c.Key] = &plotted{sheet: s}
 	}
 	s.filter = at(1, units) + ":" + at(2, s.next()-1)

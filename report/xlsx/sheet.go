@@ -3,6 +3,7 @@ package xlsx
 import (
 	"cmp"
 	"io"
+	"strconv"
 	"strings"
 	"unicode/utf8"
 
@@ -28,7 +29,7 @@ type sheet struct {
 	printed    int    // columns printed; 0 for all
 	filter     string // range with an automatic filter
 	conditions []condition
-	shades     []string // ranges shaded by their numbers
+	shades     []shade
 	links      []link
 	breaks     []int // rows that begin a page
 	charts     []placedChart
@@ -40,6 +41,12 @@ type sheet struct {
 type condition struct {
 	where, formula string
 	look           int
+}
+
+// A shade is a range shaded by its numbers: white at low, dark at high.
+type shade struct {
+	where             string
+	low, middle, high float64
 }
 
 // A placedChart is a native chart, with those drawn into the same frame, at a cell.
@@ -162,6 +169,8 @@ func (s *sheet) open() {
 	}
 }
 
+func decimal(v float64) string { return strconv.FormatFloat(v, 'f', -1, 64) }
+
 // setWidths sets the columns' widths from the last to the first, since the library puts what is set later first; alike
 // ones at once, since it copies all for each call.
 func (s *sheet) setWidths() {
@@ -183,8 +192,10 @@ func (s *sheet) decorate() {
 	for _, c := range s.conditions {
 		b.keep(f.SetConditionalFormat(s.name, c.where, []excelize.ConditionalFormatOptions{{Type: "formula", Criteria: c.formula, Format: &c.look}}))
 	}
-	for _, where := range s.shades {
-		b.keep(f.SetConditionalFormat(s.name, where, []excelize.ConditionalFormatOptions{{Type: "2_color_scale", Criteria: "=", MinType: "min", MaxType: "max", MinColor: "#FFFFFF", MaxColor: "#7FA8D1"}}))
+	for _, r := range s.shades {
+		b.keep(f.SetConditionalFormat(s.name, r.where, []excelize.ConditionalFormatOptions{{Type: "3_color_scale", Criteria: "=",
+			MinType: "num", MidType: "num", MaxType: "num", MinValue: decimal(r.low), MidValue: decimal(r.middle), MaxValue: decimal(r.high),
+			MinColor: "#FFFFFF", MidColor: "#C5D6EA", MaxColor: "#7FA8D1"}}))
 	}
 	for _, l := range s.links {
 		b.keep(f.SetCellHyperLink(s.name, l.from, l.to, "Location"))

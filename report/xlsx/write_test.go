@@ -3,11 +3,13 @@ package xlsx
 import (
 	"archive/zip"
 	"bytes"
+	"encoding/xml"
 	"errors"
 	"fmt"
 	"io"
 	"math"
 	"slices"
+	"strconv"
 	"strings"
 	"testing"
 	"time"
@@ -53,6 +55,74 @@ func unpacked(t *testing.T, part *zip.File) string {
 		t.Fatal(err)
 	}
 	return string(b)
+}
+
+// Every part is well-formed XML with each name once, and each cell of a sheet comes once and in order: programs that are
+// strict refuse a workbook otherwise.
+func TestPartsAreWellFormed(t *testing.T) {
+	for name, b := range map[string][]byte{"week": weekBook(), "short": shortBook()} {
+		z, err := zip.NewReader(bytes.NewReader(b), int64(len(b)))
+		if err != nil {
+			t.Fatal(err)
+		}
+		seen := map[string]bool{}
+		for _, part := range z.File {
+			if seen[part.Name] {
+				t.Errorf("%s: two parts %s", name, part.Name)
+			}
+			seen[part.Name] = true
+			if err := inOrder(strings.NewReader(unpacked(t, part))); err != nil {
+				t.Errorf("%s: %s: %v", name, part.Name, err)
+			}
+		}
+	}
+}
+
+// inOrder reads a part to its end. Columns, rows and cells must come in ascending order.
+func inOrder(r io.Reader) error {
+	d := xml.NewDecoder(r)
+	row, col, width := 0, 0, 0
+	for {
+		token, err := d.Token()
+		if err == io.EOF {
+			return nil
+		}
+		if err != nil {
+			return err
+		}
+		start, ok := token.(xml.StartElement)
+		if !ok || start.Name.Space != "http://schemas.openxmlformats.org/spreadsheetml/2006/main" {
+			continue
+		}
+		switch start.Name.Local {
+		case "col":
+			if from, _ := strconv.Atoi(attribute(start, "min")); from <= width {
+				return fmt.Errorf("column %d after %d", from, width)
+			}
+			width, _ = strconv.Atoi(attribute(start, "max"))
+		case "row":
+			n, _ := strconv.Atoi(attribute(start, "r"))
+			if n <= row {
+				return fmt.Errorf("row %d after %d", n, row)
+			}
+			row, col = n, 0
+		case "c":
+			c, r, err := excelize.CellNameToCoordinates(attribute(start, "r"))
+			if err != nil || r != row || c <= col {
+				return fmt.Errorf("cell %s in row %d after column %d", attribute(start, "r"), row, col)
+			}
+			col = c
+		}
+	}
+}
+
+func attribute(e xml.StartElement, name string) string {
+	for _, a := range e.Attr {
+		if a.Name.Local == name {
+			return a.Value
+		}
+	}
+	return ""
 }
 
 // A failing writer yields its error, wherever it fails.
@@ -198,6 +268,9 @@ func checkBook(t *testing.T, f *excelize.File) {
 // The inputs are marked by a word and a look, and take only what fits.
 func TestInputs(t *testing.T) {
 	f := opened(t, shortBook())
+	if w, err := f.GetColWidth("Site", "A"); err != nil || w != 44 {
+		t.Errorf("the first column is %g wide, %v", w, err)
+	}
 	rows := grid(t, f, "Site")
 	checks, err := f.GetDataValidations("Site")
 	if err != nil {
