@@ -85,7 +85,8 @@ func bare(s *report.Survey) *report.Survey {
 // A scenario is a change that a reviewer makes in the workbook, and what limits.Judge then says.
 type scenario struct {
 	name    string
-	cells   map[string]any // named cells, or "Sheet!A1"; nil empties one
+	cells   map[string]any    // named cells, or "Sheet!A1"; nil empties one
+	before  func(*site.Sheet) // what was declared when the survey was made
 	sheet   func(*site.Sheet)
 	measure func(*report.Inputs) // for uncertainties, which the summary holds
 }
@@ -109,6 +110,8 @@ var scenarios = []scenario{
 		}},
 	{name: "no short-circuit current, so the strictest row, and 160 kV, so other tables and none of EN 50160", cells: map[string]any{nameIsc: nil, nameNominal: 160000.0},
 		sheet: func(s *site.Sheet) { s.Supply.ShortCircuitCurrent, s.Supply.NominalVoltage = 0, 160000 }},
+	{name: "currents that were not declared are entered", cells: map[string]any{nameIsc: 12500.0, nameIL: 410.0},
+		before: func(s *site.Sheet) { s.Supply.ShortCircuitCurrent, s.Supply.DemandCurrent = 0, 0 }},
 	{name: "an internal point", cells: map[string]any{namePoint: "internal"}, sheet: func(s *site.Sheet) { s.Supply.Point = "internal" }},
 }
 
@@ -126,8 +129,17 @@ func TestRecalculation(t *testing.T) {
 		"tiny":  written(t, fixture.Tiny()),
 	}
 	base := written(t, bare(survey))
+	surveys := map[string]*report.Survey{}
 	for i, c := range scenarios {
-		books[strconv.Itoa(i)] = changed(t, base, c)
+		name, from := strconv.Itoa(i), base
+		surveys[name] = survey
+		if c.before != nil {
+			in := fixture.WeekInputs()
+			c.before(&in.Sheet)
+			surveys[name] = judged(t, in, sets...)
+			from = written(t, bare(surveys[name]))
+		}
+		books[name] = changed(t, from, c)
 	}
 	got := recalculated(t, books)
 	for _, name := range []string{"week", "short", "tiny"} {
@@ -144,11 +156,11 @@ func TestRecalculation(t *testing.T) {
 				c.measure(&in)
 			}
 			want := judged(t, in, sets...)
-			moved := verdictsAgree(t, got[strconv.Itoa(i)], want, survey)
+			moved := verdictsAgree(t, got[strconv.Itoa(i)], want, surveys[strconv.Itoa(i)])
 			if moved == 0 {
 				t.Error("no verdict moved, so the scenario shows nothing")
 			}
-			sheet, cell := place(t, opened(t, base), "Results_changed")
+			sheet, cell := place(t, opened(t, books[strconv.Itoa(i)]), "Results_changed")
 			if told, err := got[strconv.Itoa(i)].GetCellValue(sheet, cell); err != nil || told != strconv.Itoa(moved) {
 				t.Errorf("the summary tells that %s results changed, and %d did (%v)", told, moved, err)
 			}

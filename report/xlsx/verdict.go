@@ -116,6 +116,31 @@ func (l *line) rest(b *book) {
 		l.low, l.high = l.measured, l.measured
 	}
 	l.noise = l.Floor * unit
+	if math.IsNaN(l.noise) && !l.relative {
+		l.noise = l.noiseLevel(b)
+	}
+}
+
+// noiseLevel is what noise alone reads, in the channel's unit, where the finding cannot tell since its basis was not
+// declared.
+func (l *line) noiseLevel(b *book) float64 {
+	if b.survey.Summary == nil {
+		return math.NaN()
+	}
+	ch := b.survey.Summary.Channel(l.Channel)
+	switch {
+	case ch == nil:
+		return math.NaN()
+	case l.Order > 0:
+		return ch.H(l.Order).Floor
+	}
+	sum := 0.0
+	for h := 2; h <= l.Top; h++ {
+		if f := ch.H(h).Floor; !math.IsNaN(f) {
+			sum += f * f
+		}
+	}
+	return math.Sqrt(sum)
 }
 
 // uncertainty is the one that the finding was made with, in per cent of reading.
