@@ -70,10 +70,10 @@ func FirstLook(src wave.Source) (site.Look, error) {
 			return look, nil
 		}
 	}
-	first := cmplx.Phase(firstPhasor(data[0], rate, look.Frequency))
-	for k, x := range data {
+	phasors := fundamentals(data, rate, look.Frequency)
+	first := cmplx.Phase(phasors[0])
+	for k, p := range phasors {
 		c := &look.Channels[k]
-		p := firstPhasor(x, rate, look.Frequency)
 		c.Fundamental = cmplx.Abs(p)
 		c.Angle = degrees(p * cmplx.Rect(1, -first))
 		if rest := c.RMS*c.RMS - c.DC*c.DC - c.Fundamental*c.Fundamental; c.Fundamental > 0 {
@@ -135,16 +135,21 @@ func timeFactor(data [][]float64, rate float64) float64 {
 	return 0
 }
 
-// firstPhasor returns the rms phasor of the fundamental over the whole cycles of x, under a Hann window.
-func firstPhasor(x []float64, rate, hz float64) complex128 {
-	n := int(math.Floor(float64(len(x))*hz/rate) * rate / hz)
+// fundamentals returns the rms phasor of the fundamental of each channel over its whole cycles, under a Hann window.
+func fundamentals(data [][]float64, rate, hz float64) []complex128 {
+	out := make([]complex128, len(data))
+	n := int(math.Floor(float64(len(data[0]))*hz/rate) * rate / hz)
 	if n < 8 {
-		return 0
+		return out
 	}
-	var sum complex128
-	for i, v := range x[:n] {
+	cos, sin := make([]float64, n), make([]float64, n)
+	for i := range n {
 		hann := (1 - math.Cos(2*math.Pi*float64(i)/float64(n))) / float64(n) * math.Sqrt2
-		sum += complex(v*hann, 0) * cmplx.Rect(1, -2*math.Pi*hz*float64(i)/rate)
+		s, c := math.Sincos(2 * math.Pi * hz * float64(i) / rate)
+		cos[i], sin[i] = hann*c, -hann*s
 	}
-	return sum
+	for k, x := range data {
+		out[k] = complex(dot(cos, x[:n]), dot(sin, x[:n]))
+	}
+	return out
 }

@@ -3,6 +3,7 @@ package harmonics
 import (
 	"math"
 	"slices"
+	"sync"
 )
 
 // A sample collects values of one quantity for nearest-rank percentiles. Up to keep values it is exact. Beyond, values
@@ -96,12 +97,24 @@ func (s *sample) stats() Stats {
 	}
 	slices.Sort(s.exact)
 	n := int(s.n)
-	low, high := PercentileRanks(n, 95)
+	low, high := ranks95(n)
 	return Stats{
 		N: n, Mean: s.sum / float64(s.n), Max: s.max, MaxAt: s.maxAt,
 		P50: s.rank(NearestRank(n, 50)), P95: s.rank(NearestRank(n, 95)), P99: s.rank(NearestRank(n, 99)),
 		P95Low: s.rank(low), P95High: s.rank(high),
 	}
+}
+
+// known95 remembers what ranks95 worked out: a summary asks for the same n hundreds of times.
+var known95 sync.Map
+
+func ranks95(n int) (low, high int) {
+	if r, ok := known95.Load(n); ok {
+		return r.([2]int)[0], r.([2]int)[1]
+	}
+	low, high = PercentileRanks(n, 95)
+	known95.Store(n, [2]int{low, high})
+	return low, high
 }
 
 // statsOf is for values that are held anyway.

@@ -17,11 +17,17 @@ import (
 	"io"
 	"os"
 	"os/signal"
+	"runtime/debug"
 	"syscall"
 	"time"
 )
 
 func main() {
+	// The heap is a few tens of megabytes whatever the recording: collecting it a quarter as often costs little memory
+	// and saves a tenth of a short run. GOGC still overrules it.
+	if os.Getenv("GOGC") == "" {
+		debug.SetGCPercent(400)
+	}
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	code := run(ctx, os.Args[1:], os.Stdin, os.Stdout, os.Stderr)
 	stop()
