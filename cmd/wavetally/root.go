@@ -32,7 +32,7 @@ and gives engineering guidance; it proves neither safety nor compliance.`,
 		return usageError{fmt.Sprintf("%v; see `%s --help`", err, cmd.CommandPath())}
 	})
 	root.CompletionOptions.HiddenDefaultCmd = true
-	root.AddCommand(newDemo(a), newPeek(a), newSheet(a), newSurvey(a), newRules(a))
+	root.AddCommand(newDemo(a), newPeek(a), newSheet(a), newSurvey(a), newRules(a), newLogbook(a), newTrend(a))
 	return root
 }
 

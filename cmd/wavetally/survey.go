@@ -21,6 +21,7 @@ import (
 	"wavetally/report"
 	"wavetally/report/pdf"
 	"wavetally/report/terminal"
+	"wavetally/report/trend"
 	"wavetally/report/xlsx"
 )
 
@@ -30,6 +31,7 @@ type surveyFlags struct {
 	into, paper        string
 	formats, rules     []string
 	voltage, frequency float64
+	logbook            string
 	failOnExceeds      bool
 }
 
@@ -65,6 +67,7 @@ instead, and the same inputs give the same bytes.`,
 	flags.StringVar(&f.paper, "paper", "", "paper of the PDF: A4 or Letter; without it Letter at 60 Hz, else A4")
 	flags.Float64Var(&f.voltage, "nominal-voltage", 0, "V, instead of the site sheet's")
 	flags.Float64Var(&f.frequency, "nominal-frequency", 0, "Hz, 50 or 60, instead of the site sheet's")
+	flags.StringVar(&f.logbook, "logbook", "", "logbook file to add the survey to")
 	flags.BoolVar(&f.failOnExceeds, "fail-on-exceeds", false, "exit with code 3 when something exceeds its limit")
 	return cmd
 }
@@ -123,6 +126,11 @@ func (a *app) survey(ctx context.Context, files []string, f surveyFlags) error {
 		return err
 	}
 	fmt.Fprintf(a.out, "\nWritten: %s\n", strings.Join(f.written(), ", "))
+	if f.logbook != "" {
+		if err := a.log(s, f.logbook); err != nil {
+			return err
+		}
+	}
 	if f.failOnExceeds && s.Headline.Verdict == limits.Exceeds {
 		return errExceeds
 	}
@@ -196,6 +204,15 @@ func (a *app) measure(ctx context.Context, rec *recording) (*harmonics.Summary, 
 	case <-ctx.Done():
 		return nil, nil, ctx.Err()
 	}
+}
+
+// log adds a survey that was just made to a logbook.
+func (a *app) log(s *report.Survey, path string) error {
+	facts, err := trend.FactsOf(s)
+	if err != nil {
+		return fmt.Errorf("the documents are written, but the survey was not added to the logbook: %w", err)
+	}
+	return a.keep(bookFlags{path}, []*trend.Facts{facts})
 }
 
 // screen is what the harmonics do to the declared plant.
